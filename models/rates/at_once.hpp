@@ -1,0 +1,11 @@
+#pragma once
+#include "models/process/catalogue.hpp"
+
+namespace leat {
+
+// Dissolves within seconds of reaching a tank: first order with the time constant `within` (a salt such as halite).
+//   g = 1 / within   [1/s]
+//   source: common practice, no source
+LawKind at_once_kind();
+
+}  // namespace leat

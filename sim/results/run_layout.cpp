@@ -1,0 +1,211 @@
+#include "sim/results/run_layout.hpp"
+
+#include <cmath>
+#include <functional>
+
+#include "sim/results/layout_parts.hpp"
+
+namespace leat {
+namespace {
+
+using Rows = std::vector<const Snapshot*>;
+
+// Collects one variable over the stored times.
+class TimeTable {
+ public:
+  TimeTable(ResultSet& set, const Rows& rows) : set_(set), rows_(rows) {}
+
+  void per_time(const char* name, const char* meaning, const char* units, const std::function<double(const Snapshot&)>& value) {
+    Variable variable{name, meaning, units, {"time"}, {}};
+    for (const Snapshot* row : rows_) variable.values.push_back(value(*row));
+    set_.variables.push_back(std::move(variable));
+  }
+  void list(const char* name, const char* meaning, const char* units, std::vector<std::string> axes,
+            const std::function<std::vector<double>(const Snapshot&)>& values) {
+    axes.insert(axes.begin(), "time");
+    Variable variable{name, meaning, units, axes, {}};
+    for (const Snapshot* row : rows_) {
+      const std::vector<double> one = values(*row);
+      variable.values.insert(variable.values.end(), one.begin(), one.end());
+    }
+    set_.variables.push_back(std::move(variable));
+  }
+  void unit(const char* name, const char* meaning, const char* units, const std::function<double(const UnitSnapshot&)>& value) {
+    list(name, meaning, units, {"unit"}, [&](const Snapshot& row) {
+      std::vector<double> out;
+      for (const UnitSnapshot& one : row.units) out.push_back(value(one));
+      return out;
+    });
+  }
+  void unit_list(const char* name, const char* meaning, const char* units, std::vector<std::string> axes,
+                 const std::function<const std::vector<double>&(const UnitSnapshot&)>& value) {
+    axes.insert(axes.begin(), "unit");
+    list(name, meaning, units, axes, [&](const Snapshot& row) {
+      std::vector<double> out;
+      for (const UnitSnapshot& one : row.units) out.insert(out.end(), value(one).begin(), value(one).end());
+      return out;
+    });
+  }
+  void stream(const char* name, const char* meaning, const char* units, const std::function<double(const StreamSnapshot&)>& value) {
+    list(name, meaning, units, {"stream"}, [&](const Snapshot& row) {
+      std::vector<double> out;
+      for (const StreamSnapshot& one : row.streams) out.push_back(value(one));
+      return out;
+    });
+  }
+  void stream_list(const char* name, const char* meaning, const char* units, const char* axis, std::size_t begin, std::size_t count,
+                   const std::function<const std::vector<double>&(const StreamSnapshot&)>& value) {
+    list(name, meaning, units, {"stream", axis}, [&](const Snapshot& row) {
+      std::vector<double> out;
+      for (const StreamSnapshot& one : row.streams)
+        out.insert(out.end(), value(one).begin() + begin, value(one).begin() + begin + count);
+      return out;
+    });
+  }
+
+ private:
+  ResultSet& set_;
+  const Rows& rows_;
+};
+
+void add_axes(ResultSet& set, const RunResult& result, const Rows& rows) {
+  const Circuit& circuit = *result.circuit;
+  Axis time{"time", "time since the start", "h", {}, {}, true};
+  for (const Snapshot* row : rows) time.values.push_back(row->time / 3600);
+  Axis unit{"unit", "vessel", "", {}, {}, false}, stream{"stream", "stream", "", {}, {}, false};
+  for (int u : result.vessels) unit.labels.push_back(circuit.units[u].name);
+  for (const CircuitStream& one : circuit.streams) stream.labels.push_back(one.name);
+  Axis element{"element", "metal fed with the solids", "", {}, {}, false};
+  for (int e : result.recovered) element.labels.push_back(circuit.elements[e]);
+  Axis lot{"lot", "fed mineral, or a part of one", "", {}, {}, false};
+  for (const Lot& one : circuit.context->lots) lot.labels.push_back(one.name);
+  set.axes.insert(set.axes.end(), {time, unit, stream, element, lot});
+}
+
+// `timed`: the snapshots' stream list may differ from the steady circuit's where a loop was torn there.
+void add_recoveries(ResultSet& set, TimeTable& table, const RunResult& result) {
+  table.list("recovery_by_family", "recovery into the pregnant liquor by family of complexes, rates now", "1", {"element", "family"},
+             [](const Snapshot& s) { return s.recovery_by_family; });
+  table.list("recovery", "metal in the pregnant liquor over metal fed, rates now", "1", {"element"}, [](const Snapshot& s) { return s.recovery_now; });
+  table.list("extraction", "1 - metal leaving undissolved over metal fed, rates now", "1", {"element"}, [](const Snapshot& s) { return s.extraction_now; });
+  table.list("recovery_by_family_to_date", "recovery by family, integrals since the start", "1", {"element", "family"},
+             [](const Snapshot& s) { return s.recovery_by_family_to_date; });
+  table.list("recovery_to_date", "recovery, integrals since the start", "1", {"element"}, [](const Snapshot& s) { return s.recovery_to_date; });
+  table.list("extraction_to_date", "extraction, integrals since the start", "1", {"element"}, [](const Snapshot& s) { return s.extraction_to_date; });
+  table.list("held_in_vessels", "metal dissolved or formed in the vessels", "mol", {"element"}, [](const Snapshot& s) { return s.held_in_vessels; });
+  if (!result.steady_ok) return;
+  const Snapshot& steady = result.steady;
+  set.variables.push_back({"steady_recovery_by_family", "recovery by family at steady state", "1", {"element", "family"}, steady.recovery_by_family});
+  set.variables.push_back({"steady_recovery", "recovery at steady state", "1", {"element"}, steady.recovery_now});
+  set.variables.push_back({"steady_extraction", "extraction at steady state", "1", {"element"}, steady.extraction_now});
+}
+
+void add_units(TimeTable& table) {
+  table.unit("ph", "-log10 of the activity of H+", "1", [](const UnitSnapshot& u) { return u.ph; });
+  table.unit("ionic_strength", "ionic strength", "mol kg-1", [](const UnitSnapshot& u) { return u.ionic_strength; });
+  table.unit("water_activity", "activity of water", "1", [](const UnitSnapshot& u) { return u.water_activity; });
+  table.unit("temperature", "temperature", "K", [](const UnitSnapshot& u) { return u.temperature; });
+  table.unit("liquor_density", "density of the liquor", "kg m-3", [](const UnitSnapshot& u) { return u.liquor_density; });
+  table.unit("pulp_volume", "volume of pulp", "m3", [](const UnitSnapshot& u) { return u.pulp_volume; });
+  table.unit("outlet_flow", "pulp flow at the outlet", "m3 s-1", [](const UnitSnapshot& u) { return u.outlet_flow; });
+  table.unit("solids_fraction", "mass of solids per mass of pulp", "1", [](const UnitSnapshot& u) { return u.solids_fraction; });
+  table.unit_list("molality", "molality of a species", "mol kg-1", {"species"}, [](const UnitSnapshot& u) -> const std::vector<double>& { return u.molality; });
+  table.unit_list("formed", "solid formed", "mol", {"mineral"}, [](const UnitSnapshot& u) -> const std::vector<double>& { return u.formed; });
+  table.unit_list("saturation_index", "log10 of ion product over constant", "1", {"mineral"}, [](const UnitSnapshot& u) -> const std::vector<double>& { return u.saturation_index; });
+  table.unit_list("retained", "fed mineral not dissolved", "mol", {"lot"}, [](const UnitSnapshot& u) -> const std::vector<double>& { return u.lots; });
+  table.unit_list("dissolution_rate", "rate of dissolution", "mol s-1", {"lot"}, [](const UnitSnapshot& u) -> const std::vector<double>& { return u.dissolving; });
+  table.unit_list("clock_speed", "first-order speed of a lot", "s-1", {"lot"}, [](const UnitSnapshot& u) -> const std::vector<double>& { return u.clock_speed; });
+  table.unit_list("family_in_unit", "dissolved metal by family", "mol m-3", {"element", "family"}, [](const UnitSnapshot& u) -> const std::vector<double>& { return u.family; });
+}
+
+void add_streams(TimeTable& table, const RunResult& result) {
+  const PulpLayout& layout = result.circuit->context->layout;
+  table.stream_list("stream_flow", "component in liquor and formed solids", "mol s-1", "component", 0, layout.components + 1, [](const StreamSnapshot& s) -> const std::vector<double>& { return s.flow; });
+  table.stream_list("stream_dissolved", "component in the liquor", "mol s-1", "component", 0, layout.components + 1, [](const StreamSnapshot& s) -> const std::vector<double>& { return s.dissolved; });
+  table.stream_list("stream_lots", "fed minerals carried", "mol s-1", "lot", layout.components + 1, layout.lots, [](const StreamSnapshot& s) -> const std::vector<double>& { return s.flow; });
+  table.stream_list("stream_formed", "formed solids carried", "mol s-1", "mineral", 0, result.circuit->chemistry->phases.size(), [](const StreamSnapshot& s) -> const std::vector<double>& { return s.formed; });
+  table.stream("stream_ph", "-log10 of the activity of H+", "1", [](const StreamSnapshot& s) { return s.ph; });
+  table.stream("stream_liquor_flow", "volume flow of liquor", "m3 s-1", [](const StreamSnapshot& s) { return s.liquor_volume; });
+  table.stream("stream_pulp_flow", "volume flow of pulp", "m3 s-1", [](const StreamSnapshot& s) { return s.pulp_volume; });
+  table.stream("stream_solids_flow", "mass flow of solids", "kg s-1", [](const StreamSnapshot& s) { return s.solids; });
+  table.stream("stream_mass_flow", "mass flow", "kg s-1", [](const StreamSnapshot& s) { return s.mass; });
+}
+
+void add_closures(TimeTable& table) {
+  table.per_time("closure_elements", "worst imbalance of an element but H and O", "1", [](const Snapshot& s) { return s.closures.elements; });
+  table.per_time("closure_water", "worst imbalance of H and O", "1", [](const Snapshot& s) { return s.closures.water; });
+  table.per_time("closure_mass", "imbalance of mass", "1", [](const Snapshot& s) { return s.closures.mass; });
+  table.per_time("closure_charge", "worst |sum z N| / sum |z| N", "1", [](const Snapshot& s) { return s.closures.charge; });
+  table.per_time("closure_mass_action", "worst |ln IAP - ln K|", "1", [](const Snapshot& s) { return s.closures.mass_action; });
+  table.per_time("closure_cells", "worst imbalance of a component in a cell", "1", [](const Snapshot& s) { return s.closures.cell_balance; });
+}
+
+}  // namespace
+
+ResultSet layout_of(const RunResult& result, const SpeciesLibrary& library, const SourceText& source) {
+  ResultSet set;
+  Rows rows;
+  for (const Snapshot& row : result.history) rows.push_back(&row);
+  if (rows.empty()) rows.push_back(&result.steady);
+  add_source(set, source, "run");
+  set.attributes.emplace_back("leat_mode", result.history.empty() ? "steady" : "through time");
+  set.attributes.emplace_back("leat_activity_model", std::string(result.circuit->chemistry->activity->name()));
+  set.attributes.emplace_back("leat_pregnant_liquor", result.circuit->streams[result.circuit->pregnant_liquor].name);
+  add_axes(set, result, rows);
+  add_chemistry(set, *result.circuit->chemistry, library);
+  TimeTable table(set, rows);
+  add_recoveries(set, table, result);
+  add_units(table);
+  add_streams(table, result);
+  add_closures(table);
+  const CvodeStatistics& cv = result.statistics;
+  set.variables.push_back({"newton_iterations", "iterations of the whole-circuit steady solve", "1", {}, {double(result.steady_report.circuit.iterations)}});
+  set.variables.push_back({"time_steps", "steps of the integration through time", "1", {}, {double(cv.steps)}});
+  set.variables.push_back({"rate_evaluations", "evaluations of the rates through time", "1", {}, {double(cv.rate_evaluations)}});
+  add_cautions(set, result.cautions);
+  return set;
+}
+
+ResultSet layout_of(const BeakerResult& result, const SpeciesLibrary& library, const SourceText& source) {
+  ResultSet set;
+  const Chemistry& c = *result.chemistry;
+  add_source(set, source, "beaker");
+  set.attributes.emplace_back("leat_activity_model", std::string(c.activity->name()));
+  Axis step{"step", "step of the beaker, from 1", "1", {}, {}, false};
+  for (std::size_t k = 0; k < result.steps.size(); ++k) step.values.push_back(static_cast<double>(k + 1));
+  set.axes.push_back(step);
+  add_chemistry(set, c, library);
+  TextTable names{"step_name", "name of the step", "step", {}};
+  for (const BeakerStep& one : result.steps) names.values.push_back(one.name);
+  set.texts.push_back(names);
+  const auto scalar = [&](const char* name, const char* meaning, const char* units, const std::function<double(const BeakerStep&)>& value) {
+    Variable variable{name, meaning, units, {"step"}, {}};
+    for (const BeakerStep& one : result.steps) variable.values.push_back(value(one));
+    set.variables.push_back(variable);
+  };
+  const auto list = [&](const char* name, const char* meaning, const char* units, const char* axis, std::size_t count,
+                        const std::function<const std::vector<double>&(const BeakerStep&)>& value) {
+    Variable variable{name, meaning, units, {"step", axis}, {}};
+    for (const BeakerStep& one : result.steps) variable.values.insert(variable.values.end(), value(one).begin(), value(one).begin() + count);
+    set.variables.push_back(variable);
+  };
+  scalar("ph", "-log10 of the activity of H+", "1", [](const BeakerStep& s) { return s.state.ph; });
+  scalar("ionic_strength", "ionic strength", "mol kg-1", [](const BeakerStep& s) { return s.state.ionic_strength; });
+  scalar("water_activity", "activity of water", "1", [](const BeakerStep& s) { return s.state.water_activity; });
+  scalar("temperature", "temperature", "K", [](const BeakerStep& s) { return s.temperature; });
+  scalar("liquor_volume", "volume of the liquor", "m3", [](const BeakerStep& s) { return s.liquor_volume; });
+  scalar("liquor_density", "density of the liquor", "kg m-3", [](const BeakerStep& s) { return s.liquor_density; });
+  scalar("proton_added", "protons exchanged to hold a pH", "mol", [](const BeakerStep& s) { return s.proton_added; });
+  scalar("closure_cells", "worst imbalance of a component", "1", [](const BeakerStep& s) { return s.closure.balance; });
+  scalar("closure_mass_action", "worst |ln IAP - ln K|", "1", [](const BeakerStep& s) { return s.closure.mass_action; });
+  const std::size_t components = c.component_names.size();
+  list("molality", "molality of a species", "mol kg-1", "species", c.species.size(), [](const BeakerStep& s) -> const std::vector<double>& { return s.state.molality; });
+  list("total", "component in the beaker", "mol", "component", components, [](const BeakerStep& s) -> const std::vector<double>& { return s.totals; });
+  list("dissolved", "component in the liquor", "mol", "component", components, [](const BeakerStep& s) -> const std::vector<double>& { return s.dissolved; });
+  list("formed", "solid present", "mol", "mineral", c.phases.size(), [](const BeakerStep& s) -> const std::vector<double>& { return s.state.phase_amount; });
+  list("saturation_index", "log10 of ion product over constant", "1", "mineral", c.phases.size(), [](const BeakerStep& s) -> const std::vector<double>& { return s.state.log10_omega; });
+  add_cautions(set, result.cautions);
+  return set;
+}
+
+}  // namespace leat

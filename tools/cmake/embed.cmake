@@ -1,0 +1,20 @@
+# Writes a source file that carries text files inside the program.
+#   cmake -DOUT=file.cpp -DROOT=folder "-DFILES=a.yaml;b.yaml" -P embed.cmake
+set(text "#include \"models/data/embedded.hpp\"\n\n#include <array>\n\nnamespace leat {\nnamespace {\n\nconstexpr EmbeddedFile files[] = {\n")
+string(REPLACE "|" ";" FILES "${FILES}")
+foreach(name IN LISTS FILES)
+  file(READ "${ROOT}/${name}" content)
+  string(LENGTH "${content}" length)
+  string(APPEND text "    {\"${name}\",\n")
+  # Pieces: a string literal longer than 64 kB is not portable.
+  set(at 0)
+  while(at LESS length)
+    string(SUBSTRING "${content}" ${at} 12000 piece)
+    string(LENGTH "${piece}" size)
+    string(APPEND text "R\"leat_data(${piece})leat_data\"\n")
+    math(EXPR at "${at} + ${size}")
+  endwhile()
+  string(APPEND text "},\n")
+endforeach()
+string(APPEND text "};\n\n}  // namespace\n\nstd::span<const EmbeddedFile> embedded_data() { return files; }\n\n}  // namespace leat\n")
+file(WRITE "${OUT}" "${text}")
