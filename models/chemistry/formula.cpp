@@ -25,14 +25,17 @@ class FormulaReader {
       formula.charge = -1;
       return true;
     }
+    if (text_.find('\0') != std::string_view::npos) return fail("it holds a NUL");
     while (at_ < text_.size() && text_[at_] != '^') {
       const double multiple = at_ > 0 || std::isdigit(static_cast<unsigned char>(text_[at_])) ? number() : 1;
       std::map<std::string, double> part;
       if (!group(part, '\0')) return false;
+      if (part.empty()) return fail("a part of it has no element");
       for (const auto& [element, count] : part) formula.atoms[element] += multiple * count;
-      if (at_ < text_.size() && text_[at_] == '.') ++at_;
+      if (at_ < text_.size() && text_[at_] == '.' && ++at_ == text_.size()) return fail("nothing follows the point");
     }
     if (formula.atoms.empty()) return fail("no element found");
+    if (zero_) return fail("a count of zero");
     return charge(formula);
   }
 
@@ -53,6 +56,7 @@ class FormulaReader {
     if (at_ == begin) return 1;
     double value = 1;
     std::from_chars(text_.data() + begin, text_.data() + at_, value);
+    zero_ = zero_ || !(value > 0);
     return value;
   }
 
@@ -72,6 +76,7 @@ class FormulaReader {
         std::map<std::string, double> inner;
         if (!group(inner, mate)) return false;
         if (at_ >= text_.size()) return fail("a bracket is not closed");
+        if (inner.empty()) return fail("a bracket is empty");
         ++at_;
         const double multiple = number();
         for (const auto& [element, count] : inner) atoms[element] += multiple * count;
@@ -96,8 +101,11 @@ class FormulaReader {
     if (sign != '+' && sign != '-') return fail("a charge ends in + or -, as in ^2-");
     double size = 1;
     if (rest.size() > 1) {
-      const auto [end, error] = std::from_chars(rest.data(), rest.data() + rest.size() - 1, size);
-      if (error != std::errc() || end != rest.data() + rest.size() - 1) return fail("the charge is digits and a sign, as in ^2-");
+      int digits = 0;
+      const auto [end, error] = std::from_chars(rest.data(), rest.data() + rest.size() - 1, digits);
+      if (error != std::errc() || end != rest.data() + rest.size() - 1 || digits < 1 || digits > 9)
+        return fail("the charge is a digit and a sign, as in ^2-");
+      size = digits;
     }
     formula.charge = sign == '+' ? size : -size;
     return true;
@@ -106,6 +114,7 @@ class FormulaReader {
   std::string_view text_;
   std::string& fault_;
   std::size_t at_ = 0;
+  bool zero_ = false;  // a count of zero was read
 };
 
 std::string_view trim(std::string_view text) {
@@ -128,7 +137,7 @@ bool read_side(std::string_view side, double sign, std::vector<ReactionTerm>& te
     const std::size_t space = term.find(' ');
     if (space != std::string_view::npos) {
       const auto [end, error] = std::from_chars(term.data(), term.data() + space, coefficient);
-      if (error != std::errc() || end != term.data() + space || !(coefficient > 0)) {
+      if (error != std::errc() || end != term.data() + space || !(coefficient > 0) || !(coefficient < 1e6)) {
         fault = "'" + std::string(term) + "' is not a coefficient, a space and a name";
         return false;
       }

@@ -107,6 +107,8 @@ double LiquorVolume::volume(double temperature, std::span<const double> amounts,
   double solutes = 0, total = mass_[n] * amounts[n];
   for (int j = 0; j < n; ++j) solutes += mass_[j] * amounts[j];
   total += solutes;
+  // Hydroxide took its oxygen from the water: sodium hydroxide counts whole among the solutes.
+  solutes += hydroxide * mass_[n];
   double fraction = solutes / total;
   const bool held = fraction > largest_solute_fraction || fraction < 0;
   fraction = std::clamp(fraction, 0.0, largest_solute_fraction);
@@ -140,8 +142,9 @@ double LiquorVolume::volume(double temperature, std::span<const double> amounts,
   if (!gradient.empty()) {
     for (int j = 0; j < n; ++j)
       gradient[j] = (j == hydrogen_ ? (phi[oh] - water_volume) * dhydroxide_dh : phi[j]) +
-                    dvolume_dfraction * mass_[j] * (1 - fraction) / total;
-    gradient[n] = water_volume + (phi[oh] - water_volume) * dhydroxide_dw - dvolume_dfraction * fraction * mass_[n] / total;
+                    dvolume_dfraction * (mass_[j] * (1 - fraction) + (j == hydrogen_ ? mass_[n] * dhydroxide_dh : 0)) / total;
+    gradient[n] = water_volume + (phi[oh] - water_volume) * dhydroxide_dw +
+                  dvolume_dfraction * (mass_[n] * dhydroxide_dw - fraction * mass_[n]) / total;
   }
   return volume;
 }

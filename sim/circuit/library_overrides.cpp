@@ -18,11 +18,11 @@ bool balances(const std::vector<ReactionTerm>& terms, std::string& fault) {
     sum.charge += term.coefficient * one->charge;
   }
   for (const auto& [element, count] : sum.atoms)
-    if (std::abs(count) > 1e-9) {
+    if (!(std::abs(count) <= 1e-9)) {
       fault = "the reaction does not balance in " + element;
       return false;
     }
-  if (std::abs(sum.charge) > 1e-9) {
+  if (!(std::abs(sum.charge) <= 1e-9)) {
     fault = "the reaction does not balance in charge";
     return false;
   }

@@ -57,6 +57,7 @@ struct EquilibriumSolver::Work {
   Eigen::PartialPivLU<CellMatrix> lu;
   std::vector<double> x, f, trial;
   std::vector<int> active;
+  std::vector<Reservoir> held;  // of the last solve
   int newton_total = 0;
 
   // linearised state
@@ -152,7 +153,12 @@ struct EquilibriumSolver::Work {
   SolveReport settle(bool own) {
     SolveReport report;
     for (int change = 0; change < 40; ++change) {
-      const SolveReport one = own ? newton_own() : newton_kinsol();
+      trial = x;
+      SolveReport one = own ? newton_own() : newton_kinsol();
+      if (!one.ok && !own) {  // a line search can stop short where plain Newton steps arrive
+        x = trial;
+        one = newton_own();
+      }
       report.iterations += one.iterations;
       report.evaluations += one.evaluations;
       report.largest_residual = one.largest_residual;
@@ -266,10 +272,13 @@ SolveReport EquilibriumSolver::solve(std::span<const double> totals, double temp
                                      const std::vector<Reservoir>& held) {
   Work& w = *work_;
   w.at = nullptr;
+  w.held = held;
   if (!state.solved) return solve_cold(totals, temperature, state, held);
   w.system.set_temperature(temperature);
   w.system.set_reservoirs(held);
-  if (!w.system.set_totals(totals)) return solve_cold(totals, temperature, state, held);
+  // A state of other held items is no start: its phases mean something else.
+  if (!w.system.set_totals(totals) || static_cast<int>(state.phase_amount.size()) != w.system.phases())
+    return solve_cold(totals, temperature, state, held);
   w.x = state.x;
   w.active = state.active;
   // Amounts are kept in units of sigma, which moved with the totals.
@@ -285,6 +294,7 @@ SolveReport EquilibriumSolver::solve_cold(std::span<const double> totals, double
                                           const std::vector<Reservoir>& held) {
   Work& w = *work_;
   w.at = nullptr;
+  w.held = held;
   w.system.set_temperature(temperature);
   w.system.set_reservoirs(held);
   state.solved = false;
@@ -302,7 +312,8 @@ bool EquilibriumSolver::linearise(std::span<const double> totals, double tempera
   Work& w = *work_;
   check(state.solved, "linearise needs a solved state");
   w.system.set_temperature(temperature);
-  if (!w.system.set_totals(totals)) return false;
+  w.system.set_reservoirs(w.held);
+  if (!w.system.set_totals(totals) || static_cast<int>(state.phase_amount.size()) != w.system.phases()) return false;
   w.x = state.x;
   w.active = state.active;
   for (std::size_t a = 0; a < w.active.size(); ++a)
@@ -335,11 +346,11 @@ double EquilibriumSolver::probe_value(const Probe& probe, std::span<const double
     case ProbeKind::molality: return state.molality[probe.index];
     case ProbeKind::concentration: return state.molality[probe.index] * state.solvent / volume();
     case ProbeKind::total:
-      sum = totals[probe.index];
-      for (std::size_t s = 0; s < c.phases.size(); ++s)
-        for (const Share& share : c.phases[s].shares)
-          if (share.component == probe.index) sum -= share.coefficient * state.phase_amount[s];
-      return sum / volume();
+      // Summed over the species: what is fed less what has formed would be noise over a sparingly soluble solid.
+      for (std::size_t i = 0; i < c.species.size(); ++i)
+        for (const Share& share : c.species[i].shares)
+          if (share.component == probe.index) sum += share.coefficient * state.molality[i];
+      return sum * state.solvent / volume();
     case ProbeKind::saturation: return std::pow(10.0, state.log10_omega[probe.index]);
     case ProbeKind::formed: return state.phase_amount[probe.index];
     case ProbeKind::liquor_volume: return volume();
@@ -415,11 +426,14 @@ double EquilibriumSolver::probe(const Probe& probe, std::span<double> gradient) 
     }
     case ProbeKind::total: {
       take_volume();
-      value = liquid[probe.index] / volume;
-      gradient[probe.index] += 1 / volume;
-      for (int s = 0; s < system.solids(); ++s)
-        for (const Share& share : c.phases[s].shares)
-          if (share.component == probe.index && state.phase_amount[s] != 0) add_amount(s, -share.coefficient / volume);
+      for (std::size_t i = 0; i < c.species.size(); ++i)
+        for (const Share& share : c.species[i].shares)
+          if (share.component == probe.index) {
+            value += share.coefficient * state.molality[i] * state.solvent / volume;
+            add_molality(static_cast<int>(i), share.coefficient * state.solvent / volume);
+          }
+      dx[nc + na] += value;
+      gradient[nc] += value / w.totals[nc];
       add_volume(-value / volume);
       break;
     }

@@ -9,7 +9,7 @@
 namespace leat {
 namespace {
 
-constexpr long most_members = 200;      // of an expansion [1]
+constexpr long most_members = 200;       // of an expansion [1]
 constexpr double fastest_transfer = 10;  // kla [1/s]
 constexpr double rounding = 1e-11;       // that shares may sum to over a whole [1]
 
@@ -164,7 +164,9 @@ void FlowsheetReader::close_outlets(const UnitSpec& unit) {
   }
   if (rests == 0)
     fault(Code::does_not_close, unit.place, fmt::format("{} has no outlet for the rest; write for example onward: rest", in_quotes(unit.name)));
-  if (sum > 1 + rounding) fault(Code::does_not_close, unit.place, fmt::format("the shares of the outlets of {} sum to {:.9g} %, more than 100 %", in_quotes(unit.name), 100 * sum));
+  if (sum > 1 + rounding)
+    fault(Code::does_not_close, unit.place,
+          fmt::format("the shares of the outlets of {} sum to {:.9g} %, more than 100 %", in_quotes(unit.name), 100 * sum));
 }
 
 }  // namespace leat

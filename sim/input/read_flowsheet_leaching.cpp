@@ -35,6 +35,9 @@ const ParameterSpec* FlowsheetReader::law_parameter(const std::string& law, cons
   return nullptr;
 }
 
+// False for a mistyped law only, whose keys cannot be judged.
+bool FlowsheetReader::knows_law(const std::string& law) const { return law.empty() || law == inert_law || catalogue_.laws.count(law) > 0; }
+
 // Keys that an entry with this law may have.
 std::vector<std::string> FlowsheetReader::law_keys(const std::string& law) const {
   std::vector<std::string> keys = {"law"};
@@ -61,7 +64,7 @@ LeachingSpec FlowsheetReader::leaching(const YamlNode::Entry& entry) {
   keys.push_back("parts");
   if (divided || read.law.law != inert_law)
     for (const char* key : {"ultimate_extraction", "oxidant", "reductant", "reaction"}) keys.push_back(key);
-  typed_.only_keys(map, keys);
+  if (divided || knows_law(read.law.law)) typed_.only_keys(map, keys);
   law(map, divided ? "" : read.law.law, read.law);
   if (const YamlNode* node = map.find("ultimate_extraction")) {
     read.law.ultimate_extraction = typed_.quantity(*node, "1", 0, 1);
@@ -193,7 +196,7 @@ PartSpec FlowsheetReader::part(const YamlNode::Entry& entry, const LeachingSpec&
   if (const YamlNode* node = map.find("law")) read.law.law = law_name(*node);
   std::vector<std::string> keys = law_keys(read.law.law);
   keys.push_back("share");
-  typed_.only_keys(map, keys);
+  if (knows_law(read.law.law)) typed_.only_keys(map, keys);
   if (read.law.law == inert_law) {
     read.law = {};
     read.law.law = inert_law;

@@ -46,6 +46,7 @@ class FlowsheetReader : public KeyReader {
   void parts(const YamlNode::Entry& entry, LeachingSpec& leaching);
   PartSpec part(const YamlNode::Entry& entry, const LeachingSpec& leaching);
   std::string law_name(const YamlNode& node);
+  bool knows_law(const std::string& law) const;
   std::vector<std::string> law_keys(const std::string& law) const;
   void law(const YamlNode& map, const std::string& as, LawSpec& law);
   void reference(const YamlNode& map, LawSpec& law);

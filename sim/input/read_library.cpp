@@ -117,9 +117,9 @@ class LibraryReader {
       sum.charge += term.coefficient * one.charge;
     }
     for (const auto& [element, count] : sum.atoms)
-      if (std::abs(count) > 1e-9)
+      if (!(std::abs(count) <= 1e-9))
         diagnostics_.fault(Code::bad_data, node.place, "'" + text + "' does not balance in " + element);
-    if (std::abs(sum.charge) > 1e-9) diagnostics_.fault(Code::bad_data, node.place, "'" + text + "' does not balance in charge");
+    if (!(std::abs(sum.charge) <= 1e-9)) diagnostics_.fault(Code::bad_data, node.place, "'" + text + "' does not balance in charge");
     return *terms;
   }
 

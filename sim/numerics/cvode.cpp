@@ -83,6 +83,8 @@ CvodeSolver::CvodeSolver(TimeProblem& problem, double t0, std::span<const double
   CVodeSVtolerances(p.memory, settings.relative_tolerance, p.absolute.get());
   CVodeSetMaxNumSteps(p.memory, settings.most_steps);
   CVodeSetMaxConvFails(p.memory, 30);
+  // Quadratures follow the rates, the states follow Newton's method: what it leaves over is what balances miss.
+  CVodeSetNonlinConvCoef(p.memory, settings.newton_share);
   if (settings.first_step > 0) CVodeSetInitStep(p.memory, settings.first_step);
   const SparsityPattern& pattern = problem.pattern();
   p.matrix.reset(SUNSparseMatrix(p.size, p.size, static_cast<sunindextype>(pattern.row.size()), CSC_MAT, context));

@@ -200,8 +200,7 @@ void SnapshotMaker::closures(std::span<const double> y, const Crossed* crossed, 
     const int element = static_cast<int>(e);
     const auto amount = [&](std::span<const double> pulp) { return circuit_.element_in_liquor(element, pulp) + circuit_.element_in_lots(element, pulp); };
     const double miss = amount(in) - amount(left) - amount(stored);
-    // At a steady state the hold-up over one hour is the other denominator.
-    const double size = std::max({std::abs(amount(in)), std::abs(amount(left)), amount(held) / (crossed ? 1 : 3600)});
+    const double size = std::max({std::abs(amount(in)), std::abs(amount(left)), crossed ? amount(held) : 0.0});
     const double relative = size > 0 ? std::abs(miss) / size : 0;
     const bool water = circuit_.elements[e] == "H" || circuit_.elements[e] == "O";
     double& worst = water ? closures.water : closures.elements;
@@ -211,9 +210,9 @@ void SnapshotMaker::closures(std::span<const double> y, const Crossed* crossed, 
     }
     mass_in += circuit_.element_mass[e] * std::abs(amount(in));
     mass_miss += circuit_.element_mass[e] * miss;
-    mass_held += circuit_.element_mass[e] * amount(held);
+    mass_held += crossed ? circuit_.element_mass[e] * amount(held) : 0;
   }
-  closures.mass = std::abs(mass_miss) / std::max(mass_in, mass_held / (crossed ? 1 : 3600));
+  closures.mass = std::abs(mass_miss) / std::max(mass_in, mass_held);
   for (std::size_t v = 0; v < result_.vessels.size(); ++v) {
     const CircuitUnit& unit = circuit_.units[result_.vessels[v]];
     const std::span<const double> totals = y.subspan(unit.first_state, layout.components + 1);

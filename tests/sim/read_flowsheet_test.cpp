@@ -406,7 +406,7 @@ TEST(read_flowsheet, refuses_bad_solids_and_reagents) {
 
 TEST(read_flowsheet, refuses_bad_leaching) {
   expect_bad_plant({
-      {"law: first_order, constant: 0.8 1/h", "law: frist_order, constant: 0.8 1/h", 41, "unknown_name", "did you mean 'first_order'? Allowed: inert, at_once, first_order"},
+      {"law: first_order, constant: 0.8 1/h", "law: frist_order, constant: 0.8 1/h, control: surface", 41, "unknown_name", "did you mean 'first_order'? Allowed: inert, at_once, first_order"},
       {"law: first_order, constant: 0.8 1/h, ", "constant: 0.8 1/h, ", 41, "missing_key", "'chalcocite' needs a law: inert, at_once, first_order"},
       {"law: first_order, constant: 0.8 1/h", "law: first_order", 41, "missing_key", "needs its constant, the rate constant at the conditions of `at`; write for example constant: 20 1/h"},
       {"constant: 0.8 1/h", "constant: 0.8", 41, "wrong_unit", "'0.8' has no unit; a rate per time is needed"},
