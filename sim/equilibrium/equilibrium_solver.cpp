@@ -55,7 +55,7 @@ struct EquilibriumSolver::Work {
   CellMatrix jacobian;
   CellVector step;
   Eigen::PartialPivLU<CellMatrix> lu;
-  std::vector<double> x, f, trial;
+  std::vector<double> x, f, trial, before;
   std::vector<int> active;
   std::vector<Reservoir> held;  // of the last solve
   int newton_total = 0;
@@ -83,13 +83,31 @@ struct EquilibriumSolver::Work {
     return true;
   }
 
-  SolveReport newton_own() {
+  double shortened(double cap, double residual) {
+    const int n = size();
+    trial = x;
+    for (int halving = 0; halving < 12; ++halving, cap /= 2) {
+      for (int i = 0; i < n; ++i) x[i] = trial[i] + cap * step[i];
+      double worst = 1e300;
+      if (system.evaluate(x, active)) {
+        system.residual(x, active, f);
+        worst = 0;
+        for (int i = 0; i < n; ++i) worst = std::max(worst, std::isfinite(f[i]) ? std::abs(f[i]) : 1e300);
+      }
+      if (worst <= 5 * residual) break;
+    }
+    x = trial;
+    return cap;
+  }
+
+  // `careful`: shorter steps, taken back by half while they make the worst residual five times larger.
+  SolveReport newton_own(bool careful = false) {
     SolveReport report;
     const int n = size();
     f.assign(n, 0.0);
     double best = 1e300;
     int stalled = 0;
-    for (report.iterations = 0; report.iterations < 80; ++report.iterations) {
+    for (report.iterations = 0; report.iterations < (careful ? 300 : 80); ++report.iterations) {
       ++report.evaluations;
       if (!system.evaluate(x, active)) {
         report.message = "a value left the range of numbers";
@@ -127,7 +145,9 @@ struct EquilibriumSolver::Work {
         report.message = "the Jacobian is singular: solids or equations depend on one another";
         return report;
       }
-      const double cap = largest > step_cap ? step_cap / largest : 1;
+      const double most = careful ? 1 : step_cap;
+      double cap = largest > most ? most / largest : 1;
+      if (careful) cap = shortened(cap, report.largest_residual);
       for (int i = 0; i < n; ++i) x[i] += cap * step[i];
     }
     report.message = "too many iterations";
@@ -150,14 +170,14 @@ struct EquilibriumSolver::Work {
   }
 
   // Newton with phases dropped and added one at a time until Gibbs' conditions hold.
-  SolveReport settle(bool own) {
+  SolveReport settle(bool own, bool careful = false) {
     SolveReport report;
     for (int change = 0; change < 40; ++change) {
-      trial = x;
-      SolveReport one = own ? newton_own() : newton_kinsol();
+      before = x;
+      SolveReport one = own ? newton_own(careful) : newton_kinsol();
       if (!one.ok && !own) {  // a line search can stop short where plain Newton steps arrive
-        x = trial;
-        one = newton_own();
+        x = before;
+        one = newton_own(careful);
       }
       report.iterations += one.iterations;
       report.evaluations += one.evaluations;
@@ -196,49 +216,47 @@ struct EquilibriumSolver::Work {
     return report;
   }
 
+  // Stage after stage of steeper pseudo-species, each from the last; after the third, and after each later one, the exact
+  // equations are tried with the solids identified so far.
   SolveReport cold() {
     SolveReport report;
-    double factor_k = 1, tolerance = finish == Finish::kinsol ? 1e-3 : 0.3;
-    for (int attempt = 0; attempt < 5; ++attempt) {
-      convex.start();
-      bool candidates = system.phases() > system.solids();
-      for (int s = 0; s < system.solids(); ++s) candidates = candidates || system.chemistry().phases[s].may_form;
-      bool ok = true;
-      for (double k : {1.0, 8.0, 64.0}) {
-        ok = convex.converge(k * (k > 1 ? factor_k : 1), tolerance);
-        report.evaluations += convex.evaluations;
-        convex.evaluations = 0;
-        if (!ok) break;
-        convex.update_activity();
-        if (!candidates && attempt == 0) break;
+    bool candidates = system.phases() > system.solids();
+    for (int s = 0; s < system.solids(); ++s) candidates = candidates || system.chemistry().phases[s].may_form;
+    double steepness = 1, tolerance = finish == Finish::kinsol ? 1e-3 : 0.3;
+    convex.start();
+    for (int stage = 0; stage < 7; ++stage, steepness *= 8) {
+      if (stage > 2) tolerance = 1e-3;
+      const bool ok = convex.converge(steepness, tolerance);
+      report.evaluations += convex.evaluations;
+      convex.evaluations = 0;
+      if (!ok) report.message = "the balances at frozen activity did not converge";
+      convex.update_activity();
+      if (candidates && stage < 2) continue;
+      const SolveReport one = from_convex(stage > 2);
+      report.iterations += one.iterations;
+      report.evaluations += one.evaluations;
+      report.largest_residual = one.largest_residual;
+      report.worst = one.worst;
+      report.message = one.message;
+      if (one.ok) {
+        report.ok = true;
+        return report;
       }
-      if (ok || attempt >= 2) {
-        active.clear();
-        x.assign(convex.lambda.begin(), convex.lambda.end());
-        x.insert(x.end(), convex.ln_argument.begin(), convex.ln_argument.end());
-        x.push_back(convex.w);
-        for (int s = 0; s < system.phases(); ++s)
-          if (s >= system.solids() || convex.phase_amount(s) > identified * system.sigma(s)) {
-            active.push_back(s);
-            x.push_back(convex.phase_amount(s) / system.sigma(s));
-          }
-        const SolveReport one = settle(finish == Finish::own);
-        report.iterations += one.iterations;
-        report.evaluations += one.evaluations;
-        report.largest_residual = one.largest_residual;
-        report.worst = one.worst;
-        report.message = one.message;
-        if (one.ok) {
-          report.ok = true;
-          return report;
-        }
-      } else {
-        report.message = "the balances at frozen activity did not converge";
-      }
-      factor_k *= 16;
-      tolerance = 1e-3;
     }
     return report;
+  }
+
+  SolveReport from_convex(bool careful) {
+    active.clear();
+    x.assign(convex.lambda.begin(), convex.lambda.end());
+    x.insert(x.end(), convex.ln_argument.begin(), convex.ln_argument.end());
+    x.push_back(convex.w);
+    for (int s = 0; s < system.phases(); ++s)
+      if (s >= system.solids() || convex.phase_amount(s) > identified * system.sigma(s)) {
+        active.push_back(s);
+        x.push_back(convex.phase_amount(s) / system.sigma(s));
+      }
+    return settle(finish == Finish::own, careful);
   }
 
   void keep(EquilibriumState& state) {
@@ -346,11 +364,18 @@ double EquilibriumSolver::probe_value(const Probe& probe, std::span<const double
     case ProbeKind::molality: return state.molality[probe.index];
     case ProbeKind::concentration: return state.molality[probe.index] * state.solvent / volume();
     case ProbeKind::total:
+      if (probe.index == c.hydrogen) {  // signed: its species cancel, what is fed less what has formed does not
+        sum = totals[probe.index];
+        for (std::size_t s = 0; s < c.phases.size(); ++s)
+          for (const Share& share : c.phases[s].shares)
+            if (share.component == probe.index) sum -= share.coefficient * state.phase_amount[s];
+        return sum / volume();
+      }
       // Summed over the species: what is fed less what has formed would be noise over a sparingly soluble solid.
       for (std::size_t i = 0; i < c.species.size(); ++i)
         for (const Share& share : c.species[i].shares)
           if (share.component == probe.index) sum += share.coefficient * state.molality[i];
-      return sum * state.solvent / volume();
+      return sum * (state.solvent / volume());
     case ProbeKind::saturation: return std::pow(10.0, state.log10_omega[probe.index]);
     case ProbeKind::formed: return state.phase_amount[probe.index];
     case ProbeKind::liquor_volume: return volume();
@@ -426,12 +451,23 @@ double EquilibriumSolver::probe(const Probe& probe, std::span<double> gradient) 
     }
     case ProbeKind::total: {
       take_volume();
+      if (probe.index == c.hydrogen) {
+        value = liquid[probe.index] / volume;
+        gradient[probe.index] += 1 / volume;
+        for (int s = 0; s < system.solids(); ++s)
+          for (const Share& share : c.phases[s].shares)
+            if (share.component == probe.index && state.phase_amount[s] != 0) add_amount(s, -share.coefficient / volume);
+        add_volume(-value / volume);
+        break;
+      }
+      double sum = 0;
       for (std::size_t i = 0; i < c.species.size(); ++i)
         for (const Share& share : c.species[i].shares)
           if (share.component == probe.index) {
-            value += share.coefficient * state.molality[i] * state.solvent / volume;
+            sum += share.coefficient * state.molality[i];
             add_molality(static_cast<int>(i), share.coefficient * state.solvent / volume);
           }
+      value = sum * (state.solvent / volume);
       dx[nc + na] += value;
       gradient[nc] += value / w.totals[nc];
       add_volume(-value / volume);

@@ -79,10 +79,10 @@ TEST(formula, refuses_what_is_none) {
   EXPECT_EQ(refusal("Ag)2"), "'Ag)2' is not a formula: unexpected ')'");
   EXPECT_EQ(refusal("Ag^"), "'Ag^' is not a formula: no charge after '^'");
   EXPECT_EQ(refusal("Ag^2"), "'Ag^2' is not a formula: a charge ends in + or -, as in ^2-");
-  EXPECT_EQ(refusal("Ag^x+"), "'Ag^x+' is not a formula: the charge is digits and a sign, as in ^2-");
+  EXPECT_EQ(refusal("Ag^x+"), "'Ag^x+' is not a formula: the charge is a digit and a sign, as in ^2-");
   EXPECT_EQ(refusal("Ag^+2"), "'Ag^+2' is not a formula: a charge ends in + or -, as in ^2-");
   EXPECT_EQ(refusal("^2-"), "'^2-' is not a formula: no element found");
-  EXPECT_EQ(refusal("25"), "'25' is not a formula: no element found");
+  EXPECT_EQ(refusal("25"), "'25' is not a formula: a part of it has no element");
   EXPECT_EQ(refusal("Ag Cl"), "'Ag Cl' is not a formula: unexpected ' '");
   EXPECT_EQ(refusal("AgCl(xx)"), "'AgCl(xx)' is not a formula: unexpected 'x'");
   EXPECT_EQ(refusal("Ag+"), "'Ag+' is not a formula: unexpected '+'");
