@@ -55,6 +55,7 @@ class UnitOperation {
   // the feeds of the circuit make together [m3/s].
   virtual std::vector<double> filled_with(std::span<const double> per_volume, double) const { return {per_volume.begin(), per_volume.end()}; }
   virtual double temperature() const = 0;   // [K]
+  virtual void set_temperature(double kelvin) = 0;  // before first use: a unit that passes on takes that of its inlets
   virtual double live_volume() const { return 0; }  // [m3]
 };
 
@@ -64,6 +65,7 @@ class UnitOperationOf : public UnitOperation {
  public:
   const UnitTraits& traits() const override { return traits_; }
   double temperature() const override { return temperature_; }
+  void set_temperature(double kelvin) override { temperature_ = kelvin; }
   void evaluate(const UnitView<double>& in, UnitAnswer<double>& out) const override {
     static_cast<const Derived*>(this)->equations(in, out);
   }

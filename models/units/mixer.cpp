@@ -7,7 +7,7 @@ class Mixer final : public UnitOperationOf<Mixer> {
  public:
   Mixer(const UnitSettings& unit, const ProcessContext& context) : context_(&context) {
     temperature_ = unit.temperature;
-    traits_.outlets = {"pulp"};
+    traits_.outlets = {"joined"};
     traits_.cell = CellFrom::inlet;
   }
   template <class Real>

@@ -39,12 +39,23 @@ class CircuitBuilder {
     built.steady = join(true);
     if (flowsheet_.history) built.timed = join(false);
     if (!diagnostics_.ok()) return std::nullopt;
+    check_metals(*built.steady);
+    built.metals = flowsheet_.metals;
     if (flowsheet_.history && !flowsheet_.history->from_steady) built.start = fill(*built.timed);
     if (!diagnostics_.ok()) return std::nullopt;
     return built;
   }
 
  private:
+  void check_metals(const Circuit& circuit) {
+    std::vector<std::string> fed;
+    for (std::size_t e = 0; e < circuit.elements.size(); ++e)
+      if (circuit.fed_solids[e] > 0) fed.push_back(circuit.elements[e]);
+    for (const std::string& metal : flowsheet_.metals)
+      if (std::find(fed.begin(), fed.end(), metal) == fed.end())
+        diagnostics_.fault(Code::unknown_name, flowsheet_.metals_place, "metals names '" + metal + "', which no solids bring in" + did_you_mean(metal, fed));
+  }
+
   std::shared_ptr<const Chemistry> compile() {
     std::set<std::string> components = plan_.components;
     for (const auto& [name, liquor] : flowsheet_.liquors) maker_.collect(liquor, components);
@@ -150,6 +161,7 @@ class CircuitBuilder {
     name_leaving(*circuit);
     check_ends(*circuit, specs);
     if (!diagnostics_.ok()) return circuit;
+    pass_temperatures(*circuit, specs);
     order(*circuit, steady, specs);
     fill_elements(*circuit);
     scales(*circuit);
@@ -236,6 +248,13 @@ class CircuitBuilder {
       diagnostics_.fault(Code::unknown_name, place, unit_name + " has several outlets; name one: " + list);
       return -1;
     }
+    const int owner = circuit.find_unit(name.substr(0, name.rfind('.')));
+    if (owner >= 0) {
+      std::string list;
+      for (const std::string& one : circuit.units[owner].operation->traits().outlets) list += (list.empty() ? "" : ", ") + one;
+      diagnostics_.fault(Code::unknown_name, place, "'" + name + "' is no outlet: " + circuit.units[owner].name + " gives " + list);
+      return -1;
+    }
     diagnostics_.fault(Code::unknown_name, place, "'" + name + "' is neither a stream nor an outlet of a unit" + did_you_mean(name, names));
     return -1;
   }
@@ -294,6 +313,35 @@ class CircuitBuilder {
       const bool used = std::any_of(specs.begin(), specs.end(), [&](const UnitSpec& unit) { return unit.gas && unit.gas->takes == spec.name; });
       if (!used) diagnostics_.fault(Code::not_connected, spec.place, spec.name + " goes nowhere: no unit takes it as gas");
     }
+  }
+
+  // A unit that only passes on, without a temperature of its own, has that of its inlets; where those differ it is asked.
+  void pass_temperatures(Circuit& circuit, const std::vector<UnitSpec>& specs) {
+    std::vector<bool> known(circuit.streams.size());
+    for (std::size_t s = 0; s < circuit.streams.size(); ++s) {
+      const int source = circuit.streams[s].source;
+      known[s] = source < 0 ? circuit.streams[s].feed[context_->layout.water()] > 0
+                            : specs[source].temperature || circuit.units[source].operation->traits().hold_up;
+    }
+    for (std::size_t turn = 0; turn < specs.size(); ++turn)
+      for (std::size_t u = 0; u < specs.size(); ++u) {
+        if (specs[u].temperature || circuit.units[u].operation->traits().hold_up) continue;
+        double found = 0;
+        for (int s : circuit.units[u].takes) {
+          if (!known[s]) continue;
+          const double t = circuit.streams[s].temperature;
+          if (found > 0 && std::abs(t - found) > 0.01 && turn + 1 == specs.size())
+            diagnostics_.fault(Code::missing_key, specs[u].place,
+                               fmt::format("streams of {:.4g} and {:.4g} degC meet in {}: give it a temperature", found - zero_celsius, t - zero_celsius, specs[u].name));
+          found = t;
+        }
+        if (!(found > 0)) continue;
+        circuit.units[u].operation->set_temperature(found);
+        for (std::size_t o = 0; o < circuit.units[u].operation->traits().outlets.size(); ++o) {
+          circuit.streams[circuit.units[u].first_stream + o].temperature = found;
+          known[circuit.units[u].first_stream + o] = true;
+        }
+      }
   }
 
   // Hold-up units by distance from the feeds, then those that pass on so that each has its inlets first.

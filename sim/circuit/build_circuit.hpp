@@ -16,6 +16,7 @@ struct BuiltCase {
   std::vector<double> start;                    // state at t = 0 from the fillings; empty if it starts from steady
   std::vector<std::string> at_equilibrium;      // fed minerals without a law
   std::vector<std::string> may_form, watched;   // candidate solids, and those whose index alone is reported
+  std::vector<std::string> metals;              // whose recovery is reported; empty: every metal fed
   double site_pressure = 101325;                // [Pa]
   std::shared_ptr<const SpeciesLibrary> library;  // with the flowsheet's own constants
 };

@@ -23,7 +23,7 @@ struct CircuitStream {
 struct CircuitUnit {
   std::string name;
   std::string kind;
-  std::shared_ptr<const UnitOperation> operation;
+  std::shared_ptr<UnitOperation> operation;
   std::vector<int> takes;     // streams
   int first_stream = 0;       // its outlets are consecutive streams
   int first_state = 0;        // in the state vector; hold-up units only

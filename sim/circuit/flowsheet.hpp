@@ -171,6 +171,8 @@ struct Flowsheet {
   std::vector<UnitSpec> units;
   std::vector<LeavesSpec> leaves;
   std::string pregnant_liquor;
+  std::vector<std::string> metals;           // whose recovery is reported; empty: every metal fed
+  Place metals_place;
   Place pregnant_place, place;
   std::optional<HistorySpec> history;
 };

@@ -14,7 +14,7 @@ constexpr double shortest_time = 1e-3;                     // of a history [s]
 
 void FlowsheetReader::read(const YamlNode& root, Flowsheet& flowsheet) {
   static const std::vector<std::string> keys = {"leat",     "kind",    "title",   "site",   "chemistry",       "liquors", "solids",
-                                                "leaching", "reagents", "streams", "circuit", "leaves", "pregnant_liquor", "history"};
+                                                "leaching", "reagents", "streams", "circuit", "leaves", "pregnant_liquor", "metals", "history"};
   flowsheet_ = &flowsheet;
   flowsheet.place = root.place;
   if (!typed_.is_map(root)) return;
@@ -41,6 +41,10 @@ void FlowsheetReader::read(const YamlNode& root, Flowsheet& flowsheet) {
   if (const YamlNode* node = typed_.required(root, "pregnant_liquor")) {
     flowsheet.pregnant_liquor = typed_.text(*node).value_or("");
     flowsheet.pregnant_place = node->place;
+  }
+  if (const YamlNode* node = root.find("metals")) {
+    flowsheet.metals = typed_.text_list(*node);
+    flowsheet.metals_place = node->place;
   }
   if (const YamlNode* map = root.find("history")) flowsheet.history = history(*map);
 }

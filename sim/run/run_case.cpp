@@ -15,16 +15,18 @@ namespace {
 
 constexpr double absolute_share = 1e-7;  // of a state's scale
 
-void choose_reported(RunResult& result) {
+void choose_reported(const std::vector<std::string>& metals, RunResult& result) {
   const Circuit& circuit = *result.circuit;
   for (int u : circuit.holding)
     if (!circuit.units[u].torn) result.vessels.push_back(u);
+  std::sort(result.vessels.begin(), result.vessels.end());  // as in the file
   const Chemistry& c = *circuit.chemistry;
   for (std::size_t e = 0; e < circuit.elements.size(); ++e) {
     if (!(circuit.fed_solids[e] > 0)) continue;
     bool metal = false;
     for (int j = 0; j < c.component_count(); ++j)
       metal = metal || (c.component_role[j] == ComponentRole::metal && circuit.component_elements[j][e] > 0);
+    if (!metals.empty()) metal = std::find(metals.begin(), metals.end(), circuit.elements[e]) != metals.end();
     if (metal) result.recovered.push_back(static_cast<int>(e));
   }
 }
@@ -136,7 +138,7 @@ RunResult run_case(const Flowsheet& flowsheet, const BuiltCase& built, const Run
   result.watched = built.watched;
   result.at_equilibrium = built.at_equilibrium;
   result.site_pressure = built.site_pressure;
-  choose_reported(result);
+  choose_reported(built.metals, result);
   std::vector<double> steady;
   result.steady_ok = run_steady(result, steady);
   const bool from_steady = built.timed && built.start.empty();

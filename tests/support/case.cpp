@@ -57,7 +57,11 @@ RunResult run(const std::string& text, const RunOptions& options, const Catalogu
   return result;
 }
 
-int stream_of(const RunResult& result, const std::string& name) { return found(result.circuit->find_stream(name), "stream " + name); }
+int stream_of(const RunResult& result, const std::string& name) {
+  const int u = result.circuit->find_unit(name);
+  if (u >= 0 && result.circuit->units[u].operation->traits().outlets.size() == 1) return result.circuit->units[u].first_stream;
+  return found(result.circuit->find_stream(name), "stream " + name);
+}
 
 const StreamSnapshot& stream(const RunResult& result, const Snapshot& at, const std::string& name) {
   return at.streams.at(stream_of(result, name));

@@ -30,7 +30,7 @@ std::string faults_of(const std::string& text, const Catalogue& catalogue = regi
 // Built and run; what was not solved fails the test with the reason.
 RunResult run(const std::string& text, const RunOptions& options = {}, const Catalogue& catalogue = registered());
 
-// By name, as a flowsheet names them; a name that is not there throws.
+// By name, as a flowsheet names them (a unit with one outlet stands for it); a name that is not there throws.
 int stream_of(const RunResult& result, const std::string& name);
 const StreamSnapshot& stream(const RunResult& result, const Snapshot& at, const std::string& name);
 const UnitSnapshot& unit(const RunResult& result, const Snapshot& at, const std::string& name);

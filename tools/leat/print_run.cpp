@@ -101,12 +101,15 @@ void reagent_table(const RunResult& result) {
   TextTableWriter table({{"reagent", ""}, {"counted as", ""}, {"rate", "kg/h"}, {"use", "kg/t solids"}});
   for (const ReagentUse& use : circuit.reagents)
     table.add_row({use.stream, use.counted_as, use.rate * hour, circuit.dry_solids > 0 ? 1000 * use.rate / circuit.dry_solids : std::nan("")});
-  // What dissolves from gases is a reagent too.
-  for (std::size_t l = 0; l < circuit.ledger_component.size(); ++l) {
-    const int j = circuit.ledger_component[l];
-    const double rate = result.steady.ledger[l] * circuit.chemistry->component_mass[j];
-    table.add_row({circuit.units[circuit.ledger_unit[l]].name + " gas", circuit.chemistry->component_names[j], rate * hour,
-                   circuit.dry_solids > 0 ? 1000 * rate / circuit.dry_solids : std::nan("")});
+  // What dissolves from gases is a reagent too: one row a component, all vessels together.
+  for (int j = 0; j < circuit.chemistry->component_count(); ++j) {
+    double rate = 0;
+    int vessels = 0;
+    for (std::size_t l = 0; l < circuit.ledger_component.size(); ++l)
+      if (circuit.ledger_component[l] == j) rate += result.steady.ledger[l] * circuit.chemistry->component_mass[j], ++vessels;
+    if (vessels > 0)
+      table.add_row({fmt::format("from air, {} vessel{}", vessels, vessels > 1 ? "s" : ""), circuit.chemistry->component_names[j], rate * hour,
+                     circuit.dry_solids > 0 ? 1000 * rate / circuit.dry_solids : std::nan("")});
   }
   heading("Reagents");
   fmt::print("{}", table.to_string());

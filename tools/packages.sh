@@ -1,0 +1,17 @@
+# Sourced by the scripts beside it: need PACKAGE... installs what is missing on Debian 12.
+need() {
+  missing=""
+  for package in "$@"; do
+    dpkg-query -W -f='${Status}' "$package" 2>/dev/null | grep -q "ok installed" || missing="$missing $package"
+  done
+  [ -n "$missing" ] || return 0
+  as_root=""
+  [ "$(id -u)" -eq 0 ] || as_root="sudo"
+  echo "installing:$missing"
+  $as_root apt-get update -q
+  DEBIAN_FRONTEND=noninteractive $as_root apt-get install -y -q --no-install-recommends $missing
+}
+build_packages="g++ cmake ninja-build pkg-config ccache libsundials-dev libsuitesparse-dev libeigen3-dev libyaml-cpp-dev
+  libhdf5-dev libudunits2-dev libfmt-dev libcli11-dev"
+test_packages="libgtest-dev libbenchmark-dev netcdf-bin hdf5-tools python3 python3-yaml python3-numpy python3-xarray python3-netcdf4
+  python3-h5py"
