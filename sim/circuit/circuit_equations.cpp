@@ -34,6 +34,7 @@ CircuitEquations::CircuitEquations(std::shared_ptr<const Circuit> circuit, Finis
 }
 
 void CircuitEquations::forget() {
+  last_y_.clear();
   for (Cell& cell : cells_) cell.state.solved = false;
 }
 
@@ -117,6 +118,12 @@ void CircuitEquations::run_unit(int unit, std::span<const double> state, std::sp
 
 bool CircuitEquations::rates(std::span<const double> y, std::span<double> dydt) {
   const Circuit& c = *circuit_;
+  // Solvers ask twice at one point (rates, then quadratures or a Jacobian): flows and cells are still those of y.
+  if (std::equal(y.begin(), y.end(), last_y_.begin(), last_y_.end())) {
+    std::copy(last_rates_.begin(), last_rates_.end(), dydt.begin());
+    return true;
+  }
+  last_y_.clear();
   rates_scratch_.resize(c.states);
   const auto outlets_of = [&](const CircuitUnit& unit) {
     return std::span<double>(flows_.data() + unit.first_stream * width_, unit.operation->traits().outlets.size() * width_);
@@ -147,11 +154,14 @@ bool CircuitEquations::rates(std::span<const double> y, std::span<double> dydt) 
     run_unit(u, y.subspan(unit.first_state, unit.states), inlet_, dydt.subspan(unit.first_state, unit.states),
              outlets_of(unit), ledger_of(unit));
   }
+  last_y_.assign(y.begin(), y.end());
+  last_rates_.assign(dydt.begin(), dydt.begin() + c.states);
   return true;
 }
 
 bool CircuitEquations::unit_rates(int u, std::span<const double> state, std::span<const double> inlet, std::span<double> rates) {
   const CircuitUnit& unit = circuit_->units[u];
+  last_y_.clear();
   if (!solve_cell(u, state.first(chem_), false)) return false;
   const std::size_t outlets = unit.operation->traits().outlets.size(), ledgers = unit.operation->traits().ledger.size();
   run_unit(u, state, inlet, rates, {flows_.data() + unit.first_stream * width_, outlets * width_},
@@ -163,6 +173,7 @@ bool CircuitEquations::unit_rates(int u, std::span<const double> state, std::spa
 bool CircuitEquations::dry(std::span<const double> inlet) const { return !(inlet[chem_ - 1] > 1e-9 * 55500 * circuit_->flow_scale); }
 
 void CircuitEquations::refresh_passing() {
+  last_y_.clear();
   for (int u : circuit_->passing) {
     const CircuitUnit& unit = circuit_->units[u];
     inlet_of(u, inlet_);
@@ -349,6 +360,7 @@ bool CircuitEquations::jacobian(std::span<const double> y, std::span<double> val
 
 bool CircuitEquations::unit_jacobian(int u, std::span<const double> state, std::span<double> values) {
   const CircuitUnit& unit = circuit_->units[u];
+  last_y_.clear();
   if (!solve_cell(u, state.first(chem_), true)) return false;
   Local local;
   std::vector<double> folded, inlet(width_, 0.0);

@@ -79,6 +79,7 @@ class CircuitEquations {
   int chem_ = 0;       // components with water
   std::vector<Cell> cells_;
   std::vector<double> flows_, ledger_, scratch_, inlet_, rates_scratch_;
+  std::vector<double> last_y_, last_rates_;  // of the last evaluation; empty if cells or flows have moved since
   std::vector<std::vector<Block>> stream_blocks_;
   SparsityPattern pattern_;
   std::vector<std::vector<int>> sources_;  // per holding unit: units whose states its rates depend on, ascending
