@@ -9,7 +9,7 @@ namespace leat {
 
 struct CvodeSettings {
   double relative_tolerance = 1e-6;
-  double newton_share = 1e-4;    // of the error test that Newton's method may leave over [1]
+  double newton_share = 1e-3;    // of the error test that Newton's method may leave over [1]
   long most_steps = 200000;      // between two output times
   double first_step = 0;         // [s]; 0: chosen by the solver
 };

@@ -8,7 +8,7 @@ namespace leat {
 
 struct RunOptions {
   Finish finish = Finish::own;                   // of the cells inside the circuit
-  double relative_tolerance = 1e-6;              // of CVODE
+  double relative_tolerance = 1e-8;              // of CVODE
   std::function<void(double share)> progress;    // through time, 0 to 1; may be empty
 };
 
