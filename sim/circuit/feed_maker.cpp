@@ -3,6 +3,7 @@
 #include <fmt/format.h>
 
 #include <algorithm>
+#include <cmath>
 
 namespace leat {
 
@@ -59,6 +60,16 @@ std::optional<Feed> FeedMaker::reagent(const StreamSpec& stream, double temperat
         }
   }
   if (spec->counted_as.empty()) counted_share = 1;
+  double charge = 0, size = 0;
+  for (int j = 0; j < chemistry.water(); ++j) {
+    charge += chemistry.component_charge[j] * per_kg[j];
+    size += std::abs(chemistry.component_charge[j] * per_kg[j]);
+  }
+  if (std::abs(charge) > 1e-9 * size) {
+    diagnostics_.fault(Code::does_not_balance, spec->place,
+                       fmt::format("reagent {} carries a charge of {:+.4g} mol/kg; write neutral compounds", spec->name, charge));
+    return std::nullopt;
+  }
   const double volume_per_kg = chemistry.liquor_volume.volume(temperature, per_kg, {});
   const double mass = convertible(stream.rate.quantity.unit, "kg/s") ? convert(stream.rate.quantity, "kg/s")
                                                                       : convert(stream.rate.quantity, "m3/s") / volume_per_kg;

@@ -141,6 +141,12 @@ void find_cautions(const SpeciesLibrary& library, RunResult& result) {
     if (acid && ammonia) add(result.cautions, "acid meets ammonia", unit.name + ": an acid stream meets ammonia: heat, and smoke with volatile acids; keep the vents apart");
     if (acid && cyanide) add(result.cautions, "acid meets cyanide", unit.name + ": an acid stream meets cyanide: hydrogen cyanide is set free at once");
   }
+  for (const std::string& mineral : result.at_equilibrium)
+    add(result.cautions, "at equilibrium", mineral + " is fed without a law: it is taken to be at equilibrium in every vessel and stream");
+  const CircuitStream& pregnant = circuit.streams[circuit.pregnant_liquor];
+  if (pregnant.taker >= 0)
+    add(result.cautions, "recovery read inside the circuit",
+        pregnant.name + " goes on to " + circuit.units[pregnant.taker].name + ": metal that comes back through it is counted again");
   watch_constants(chemistry, result.cautions);
 }
 

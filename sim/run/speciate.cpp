@@ -96,6 +96,11 @@ class Bench {
     double mass = 0;
     const auto row = maker_.row(one.name, one.amount.place, *chemistry_, mass);
     if (!row) return 0;
+    double charge = 0;
+    for (int j = 0; j < chemistry_->water(); ++j) charge += chemistry_->component_charge[j] * (*row)[j];
+    if (std::abs(charge) > 1e-9)
+      diagnostics_.fault(Code::does_not_balance, one.amount.place,
+                         fmt::format("{} alone carries a charge of {:+.4g}; add a neutral compound", one.name, charge));
     double moles = 0;
     const Quantity& typed = one.amount.quantity;
     if (convertible(typed.unit, "mol")) moles = convert(typed, "mol");
