@@ -84,8 +84,11 @@ LawKind first_order_kind() {
       {"constant", "1/s", true, {}, 0, 1e3, "rate constant at the conditions of `at`", ""},
       {"activation_energy", "J/mol", false, 0.0, 0, 5e5, "Arrhenius activation energy; without it the constant holds at every temperature", ""},
       {"at_temperature", "K", false, {}, 200, 500, "temperature at which the constant was measured", ""}};
-  kind.make = [](const LawSettings& settings) { return std::make_shared<FirstOrder>(settings); };
+  kind.takes_orders = true;
+  kind.make = make_first_order;
   return kind;
 }
+
+std::shared_ptr<const RateLaw> make_first_order(const LawSettings& settings) { return std::make_shared<FirstOrder>(settings); }
 
 }  // namespace leat

@@ -11,13 +11,14 @@ class Splitter final : public UnitOperationOf<Splitter> {
     temperature_ = unit.temperature;
     for (const OutletShare& outlet : outlets_) traits_.outlets.push_back(outlet.name);
     traits_.cell = CellFrom::inlet;
-    traits_.probes = {{ProbeKind::liquor_volume, 0}, {ProbeKind::formed_volume, 0}};
+    for (const OutletShare& outlet : outlets_) by_volume_ = by_volume_ || outlet.volume_flow > 0;
+    if (by_volume_) traits_.probes = {{ProbeKind::liquor_volume, 0}, {ProbeKind::formed_volume, 0}};
   }
 
   template <class Real>
   void equations(const UnitView<Real>& in, UnitAnswer<Real>& out) const {
     const int contents = context_->layout.size();
-    const Real volume = pulp_volume(in);
+    const Real volume = by_volume_ ? pulp_volume(in) : Real(1.0);
     Real rest(1.0);
     for (const OutletShare& outlet : outlets_)
       if (!outlet.rest) rest -= share_of(outlet, volume);
@@ -28,10 +29,11 @@ class Splitter final : public UnitOperationOf<Splitter> {
   }
 
   std::string objection(const UnitView<double>& in) const override {
-    const double volume = pulp_volume(in);
+    const double volume = by_volume_ ? pulp_volume(in) : 1;
     double asked = 0;
     for (const OutletShare& outlet : outlets_)
       if (!outlet.rest) asked += share_of(outlet, volume);
+    if (asked > 1 + 1e-9 && !by_volume_) return fmt::format("cannot split: its outlets ask for {:.4g} % of what enters", 100 * asked);
     if (asked > 1 + 1e-9)
       return fmt::format("cannot split: its outlets ask for {:.4g} m3/h of the {:.4g} m3/h that enter", asked * volume * 3600, volume * 3600);
     return {};
@@ -52,6 +54,7 @@ class Splitter final : public UnitOperationOf<Splitter> {
 
   const ProcessContext* context_;
   std::vector<OutletShare> outlets_;
+  bool by_volume_ = false;  // some outlet is a volume flow
 };
 
 }  // namespace

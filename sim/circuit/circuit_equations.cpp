@@ -108,18 +108,40 @@ bool CircuitEquations::solve_cell(int unit, std::span<const double> totals, bool
   return true;
 }
 
-void CircuitEquations::run_unit(int unit, std::span<const double> state, std::span<const double> inlet,
+// What a model returns is distrusted: outputs are poisoned before, and looked at after.
+bool CircuitEquations::run_unit(int unit, std::span<const double> state, std::span<const double> inlet,
                                 std::span<double> rates, std::span<double> outlets, std::span<double> ledger) {
   const Cell& cell = cells_[unit];
   const UnitView<double> view{state, inlet, cell.probes, cell.speeds, cell.volume_gradient};
   UnitAnswer<double> answer{rates, outlets, ledger};
-  circuit_->units[unit].operation->evaluate(view, answer);
+  for (std::span<double> out : {rates, outlets, ledger}) std::fill(out.begin(), out.end(), std::nan(""));
+  const CircuitUnit& place = circuit_->units[unit];
+  place.operation->evaluate(view, answer);
+  const auto broken = [](std::span<const double> out) {
+    for (std::size_t k = 0; k < out.size(); ++k)
+      if (!std::isfinite(out[k])) return static_cast<int>(k);
+    return -1;
+  };
+  const auto quantity = [&](int k) {
+    if (k < chem_) return circuit_->chemistry->total_names[k];
+    if (k < width_) return circuit_->context->lots[k - chem_].name;
+    return place.operation->traits().state_names[k - width_];
+  };
+  if (const int k = broken(outlets); k >= 0)
+    complaint = place.name + ": outlet " + place.operation->traits().outlets[k / width_] + " of " + quantity(k % width_) + " is not finite";
+  else if (const int r = broken(rates); r >= 0)
+    complaint = place.name + ": the rate of " + quantity(r) + " is not finite";
+  else if (const int l = broken(ledger); l >= 0)
+    complaint = place.name + ": what it takes up of " + place.operation->traits().ledger[l] + " is not finite";
+  else
+    return true;
+  return false;
 }
 
 bool CircuitEquations::rates(std::span<const double> y, std::span<double> dydt) {
   const Circuit& c = *circuit_;
   // Solvers ask twice at one point (rates, then quadratures or a Jacobian): flows and cells are still those of y.
-  if (std::equal(y.begin(), y.end(), last_y_.begin(), last_y_.end())) {
+  if (!last_y_.empty() && std::equal(y.begin(), y.end(), last_y_.begin(), last_y_.end())) {
     std::copy(last_rates_.begin(), last_rates_.end(), dydt.begin());
     return true;
   }
@@ -136,23 +158,29 @@ bool CircuitEquations::rates(std::span<const double> y, std::span<double> dydt) 
     const CircuitUnit& unit = c.units[u];
     const std::span<const double> state = y.subspan(unit.first_state, unit.states);
     if (!solve_cell(u, state.first(chem_), false)) return false;
-    run_unit(u, state, inlet_, std::span<double>(rates_scratch_).subspan(unit.first_state, unit.states), outlets_of(unit), ledger_of(unit));
+    if (!run_unit(u, state, inlet_, std::span<double>(rates_scratch_).subspan(unit.first_state, unit.states), outlets_of(unit), ledger_of(unit)))
+      return false;
   }
   for (int u : c.passing) {
     const CircuitUnit& unit = c.units[u];
     inlet_of(u, inlet_);
-    if (dry(inlet_)) {
+    if (cells_[u].used && dry(inlet_)) {
+      if (std::any_of(inlet_.begin() + chem_, inlet_.end(), [&](double flow) { return flow > circuit_->flow_scale; })) {
+        complaint = unit.name + ": solids without liquor reach it";
+        return false;
+      }
       std::fill(outlets_of(unit).begin(), outlets_of(unit).end(), 0.0);
       continue;
     }
     if (!solve_cell(u, std::span<const double>(inlet_).first(chem_), false)) return false;
-    run_unit(u, {}, inlet_, {}, outlets_of(unit), ledger_of(unit));
+    if (!run_unit(u, {}, inlet_, {}, outlets_of(unit), ledger_of(unit))) return false;
   }
   for (int u : c.holding) {
     const CircuitUnit& unit = c.units[u];
     inlet_of(u, inlet_);
-    run_unit(u, y.subspan(unit.first_state, unit.states), inlet_, dydt.subspan(unit.first_state, unit.states),
-             outlets_of(unit), ledger_of(unit));
+    if (!run_unit(u, y.subspan(unit.first_state, unit.states), inlet_, dydt.subspan(unit.first_state, unit.states), outlets_of(unit),
+                  ledger_of(unit)))
+      return false;
   }
   last_y_.assign(y.begin(), y.end());
   last_rates_.assign(dydt.begin(), dydt.begin() + c.states);
@@ -164,9 +192,8 @@ bool CircuitEquations::unit_rates(int u, std::span<const double> state, std::spa
   last_y_.clear();
   if (!solve_cell(u, state.first(chem_), false)) return false;
   const std::size_t outlets = unit.operation->traits().outlets.size(), ledgers = unit.operation->traits().ledger.size();
-  run_unit(u, state, inlet, rates, {flows_.data() + unit.first_stream * width_, outlets * width_},
-           {ledger_.data() + unit.first_ledger, ledgers});
-  return true;
+  return run_unit(u, state, inlet, rates, {flows_.data() + unit.first_stream * width_, outlets * width_},
+                  {ledger_.data() + unit.first_ledger, ledgers});
 }
 
 // Nothing that a cell could be solved for reaches a unit: its outlets stand still.
@@ -177,19 +204,20 @@ void CircuitEquations::refresh_passing() {
   for (int u : circuit_->passing) {
     const CircuitUnit& unit = circuit_->units[u];
     inlet_of(u, inlet_);
-    if (dry(inlet_) || !solve_cell(u, std::span<const double>(inlet_).first(chem_), false)) continue;
+    if ((cells_[u].used && dry(inlet_)) || !solve_cell(u, std::span<const double>(inlet_).first(chem_), false)) continue;
     run_unit(u, {}, inlet_, {}, {flows_.data() + unit.first_stream * width_, unit.operation->traits().outlets.size() * width_},
              {ledger_.data() + unit.first_ledger, unit.operation->traits().ledger.size()});
   }
 }
 
-std::string CircuitEquations::objection() const {
+std::string CircuitEquations::objection(std::span<const double> y) const {
   std::vector<double> inlet(width_);
   for (std::size_t u = 0; u < circuit_->units.size(); ++u) {
     const CircuitUnit& unit = circuit_->units[u];
     inlet_of(static_cast<int>(u), inlet);
-    const UnitView<double> view{{}, inlet, cells_[u].probes, cells_[u].speeds, cells_[u].volume_gradient};
-    if (unit.operation->traits().hold_up) continue;
+    const std::span<const double> state = unit.operation->traits().hold_up ? y.subspan(unit.first_state, unit.states) : std::span<const double>{};
+    const UnitView<double> view{state, inlet, cells_[u].probes, cells_[u].speeds, cells_[u].volume_gradient};
+    if (unit.torn || (cells_[u].used && !unit.operation->traits().hold_up && dry(inlet))) continue;
     const std::string reason = unit.operation->objection(view);
     if (!reason.empty()) return unit.name + " " + reason;
   }
@@ -294,7 +322,7 @@ bool CircuitEquations::jacobian(std::span<const double> y, std::span<double> val
   for (int u : c.passing) {
     const CircuitUnit& unit = c.units[u];
     inlet_of(u, inlet);
-    if (dry(inlet)) {
+    if (cells_[u].used && dry(inlet)) {
       for (std::size_t o = 0; o < unit.operation->traits().outlets.size(); ++o) stream_blocks_[unit.first_stream + o].clear();
       continue;
     }

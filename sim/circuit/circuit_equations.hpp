@@ -35,7 +35,8 @@ class CircuitEquations {
   std::span<const double> ledger() const { return ledger_; }              // [mol/s]
   const EquilibriumState* cell(int unit) const { return cells_[unit].used ? &cells_[unit].state : nullptr; }
   std::span<const double> speeds(int unit) const { return cells_[unit].speeds; }
-  std::string objection() const;       // first unit that cannot do what it is asked, with the reason
+  // First unit that cannot do what it is asked at y, with the reason; empty if all can.
+  std::string objection(std::span<const double> y) const;
   EquilibriumSolver& solver() { return solver_; }
   std::string complaint;
 
@@ -65,7 +66,7 @@ class CircuitEquations {
   };
 
   bool solve_cell(int unit, std::span<const double> totals, bool slopes);
-  void run_unit(int unit, std::span<const double> state, std::span<const double> inlet, std::span<double> rates,
+  bool run_unit(int unit, std::span<const double> state, std::span<const double> inlet, std::span<double> rates,
                 std::span<double> outlets, std::span<double> ledger);
   void differentiate(int unit, std::span<const double> state, std::span<const double> inlet, Local& local);
   void fold_cell(int unit, const Local& local, bool state_cell, std::vector<double>& folded);

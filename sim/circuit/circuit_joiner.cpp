@@ -59,7 +59,7 @@ class Joiner {
         member.name = unit.name + "." + std::to_string(k);
         member.kind = expansion->second.unit;
         member.count = 1;
-        if (k > 1) member.takes = {{unit.name + "." + std::to_string(k - 1) + ".pulp", unit.place}};
+        if (k > 1) member.takes = {{unit.name + "." + std::to_string(k - 1), unit.place}};
         const auto extra = unit.member_takes.find(k);
         if (extra != unit.member_takes.end()) member.takes.insert(member.takes.end(), extra->second.begin(), extra->second.end());
         member.member_takes.clear();
@@ -133,7 +133,7 @@ class Joiner {
     // A unit with one outlet by its own name; a train by its last member.
     std::string unit_name = name, outlet;
     for (const UnitSpec& spec : parts_.flowsheet->units)
-      if (parts_.catalogue->expansions.count(spec.kind) && (name == spec.name || name.rfind(spec.name + ".", 0) == 0)) {
+      if (circuit.find_unit(name) < 0 && parts_.catalogue->expansions.count(spec.kind) && (name == spec.name || name.rfind(spec.name + ".", 0) == 0)) {
         const std::string rest = name.size() > spec.name.size() ? name.substr(spec.name.size()) : "";
         const std::string last = spec.name + "." + std::to_string(spec.count) + rest;
         const int found = circuit.find_stream(last);

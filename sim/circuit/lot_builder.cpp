@@ -273,6 +273,8 @@ std::shared_ptr<const RateLaw> make_law(const LotPlan::Entry& entry, const Speci
   const auto energy = settings.values.find("activation_energy");
   if (energy != settings.values.end() && energy->second > 0 && temperature == entry.law.at.end())
     diagnostics.fault(Code::missing_key, entry.law.place, entry.name + ": an activation energy needs the temperature its constant was measured at; write at: {temperature: 25 degC}");
+  if (!kind.takes_orders && !entry.law.orders.empty())
+    diagnostics.fault(Code::not_supported, entry.law.orders_place, entry.name + ": the law " + kind.name + " takes no orders");
   std::set<int> ordered;
   for (const auto& [name, order] : entry.law.orders) {
     const auto probe = probe_of(name, chemistry, library);

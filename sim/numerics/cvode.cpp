@@ -107,6 +107,7 @@ CvodeSolver::CvodeSolver(TimeProblem& problem, double t0, std::span<const double
   CVodeSetMaxConvFails(p.memory, 30);
   // Quadratures follow the rates, the states follow Newton's method: what it leaves over is what balances miss.
   CVodeSetNonlinConvCoef(p.memory, settings.newton_share);
+  CVodeSetDeltaGammaMaxLSetup(p.memory, settings.stale_step);
   if (settings.first_step > 0) CVodeSetInitStep(p.memory, settings.first_step);
   const SparsityPattern& pattern = problem.pattern();
   p.matrix.reset(SUNSparseMatrix(p.size, p.size, static_cast<sunindextype>(pattern.row.size()), CSC_MAT, context));
@@ -121,7 +122,10 @@ CvodeSolver::CvodeSolver(TimeProblem& problem, double t0, std::span<const double
     p.z.reset(N_VNew_Serial(p.quadratures, context));
     N_VConst(0.0, p.z.get());
     CVodeQuadInit(p.memory, Parts::quadrature, p.z.get());
-    CVodeSetQuadErrCon(p.memory, 0);
+    // Carried with the history of the states, but with a tolerance that never limits a step: without the first the sums
+    // over the boundary drift from what the states say.
+    CVodeSetQuadErrCon(p.memory, 1);
+    CVodeQuadSStolerances(p.memory, 0, 1e30);
   }
 }
 

@@ -10,6 +10,7 @@ namespace leat {
 struct CvodeSettings {
   double relative_tolerance = 1e-6;
   double newton_share = 1e-3;    // of the error test that Newton's method may leave over [1]
+  double stale_step = 1e-9;      // change of the step size that a factorisation may outlive [1]
   long most_steps = 200000;      // between two output times
   double first_step = 0;         // [s]; 0: chosen by the solver
 };
@@ -18,7 +19,7 @@ struct CvodeStatistics {
   long steps = 0, rate_evaluations = 0, jacobian_evaluations = 0, error_failures = 0, convergence_failures = 0;
 };
 
-// Variable-order BDF of CVODES with the KLU solver; quadratures follow without error control. Not shared between threads.
+// Variable-order BDF of CVODES with the KLU solver; quadratures follow without limiting a step. Not shared between threads.
 class CvodeSolver {
  public:
   // `problem` must outlive the solver. absolute_tolerance has one entry per unknown.

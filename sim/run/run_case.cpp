@@ -85,7 +85,10 @@ bool run_timed(const HistorySpec& history, std::shared_ptr<const Circuit> circui
     const double t = std::min(history.until, row * history.every);
     const SolveReport report = solver.advance(t);
     if (!report.ok) {
-      result.failure = report.message;
+      // The reason may be in the plain sight of the last state: a vessel run empty.
+      std::vector<double> scratch(solver.state().size());
+      const std::string objection = reading.rates(solver.state(), scratch) ? reading.objection(solver.state()) : "";
+      result.failure = objection.empty() ? report.message : objection + "; " + report.message;
       return false;
     }
     const std::span<const double> z = solver.quadrature();
@@ -100,7 +103,7 @@ bool run_timed(const HistorySpec& history, std::shared_ptr<const Circuit> circui
       result.failure = fmt::format("at {:.6g} h, {}", t / 3600, maker.complaint);
       return false;
     }
-    const std::string objection = reading.objection();
+    const std::string objection = reading.objection(solver.state());
     const std::string fault = row == 0 ? "" : closure_fault(snapshot.closures, true);
     if (!fault.empty() || !objection.empty()) {
       result.failure = fmt::format("at {:.6g} h, {}", t / 3600, fault.empty() ? objection : "the run does not close: " + fault);
@@ -127,7 +130,7 @@ std::string closure_fault(const Closures& closures, bool timed, const ClosureBou
   if (!(closures.mass <= balance)) return over("the balance of mass", closures.mass, balance, "");
   if (!(closures.charge <= bounds.charge)) return over("the balance of charge", closures.charge, bounds.charge, "");
   if (!(closures.mass_action <= bounds.mass_action)) return over("mass action", closures.mass_action, bounds.mass_action, closures.worst_cell);
-  if (!(closures.cell_balance <= bounds.cell_balance)) return over("the balance of a cell", closures.cell_balance, bounds.cell_balance, closures.worst_cell);
+  if (!(closures.cell_balance <= bounds.cell_balance)) return over("the balance of a cell", closures.cell_balance, bounds.cell_balance, closures.worst_balance);
   return {};
 }
 

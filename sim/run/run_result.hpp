@@ -47,7 +47,7 @@ struct Closures {
   double charge = 0;       // |sum z N| / sum |z| N, worst vessel or stream [1]
   double mass_action = 0;  // worst |ln IAP - ln K| [ln]
   double cell_balance = 0; // worst component in a cell [1]
-  std::string worst_element, worst_cell;
+  std::string worst_element, worst_cell, worst_balance;  // element; place of mass action; place of cell balance
 };
 
 struct Snapshot {

@@ -219,6 +219,7 @@ void SnapshotMaker::closures(std::span<const double> y, const Crossed* crossed, 
     const auto cell = equations_.solver().closure(totals, unit.operation->temperature(), *equations_.cell(result_.vessels[v]));
     closures.charge = std::max(closures.charge, charge_miss(totals));
     if (cell.mass_action > closures.mass_action) closures.worst_cell = unit.name;
+    if (cell.balance > closures.cell_balance) closures.worst_balance = unit.name;
     closures.mass_action = std::max(closures.mass_action, cell.mass_action);
     closures.cell_balance = std::max(closures.cell_balance, cell.balance);
   }
@@ -228,6 +229,7 @@ void SnapshotMaker::closures(std::span<const double> y, const Crossed* crossed, 
     closures.charge = std::max(closures.charge, charge_miss(totals));
     const auto cell = equations_.solver().closure(totals, circuit_.streams[s].temperature, stream_cells_[s]);
     if (cell.mass_action > closures.mass_action) closures.worst_cell = circuit_.streams[s].name;
+    if (cell.balance > closures.cell_balance) closures.worst_balance = circuit_.streams[s].name;
     closures.mass_action = std::max(closures.mass_action, cell.mass_action);
     closures.cell_balance = std::max(closures.cell_balance, cell.balance);
   }

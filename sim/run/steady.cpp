@@ -127,6 +127,12 @@ SolveReport sweep(CircuitEquations& equations, std::vector<double>& y, const Sca
 
 SolveReport whole(CircuitEquations& equations, std::vector<double>& y, const Scales& scales) {
   CircuitProblem problem(equations);
+  if (y.empty()) {  // nothing holds anything: flows follow one another
+    SolveReport report;
+    report.ok = equations.rates(y, {});
+    report.message = equations.complaint;
+    return report;
+  }
   KinsolSolver solver(problem);
   KinsolSettings settings;
   settings.tolerance = 1e-11;
@@ -202,14 +208,14 @@ SteadyReport solve_steady(CircuitEquations& equations, std::vector<double>& y) {
   for (report.sweeps = 0; report.sweeps < first_sweeps; ++report.sweeps)
     report.stages = sweep(equations, y, scales, report.sweeps == 0);
   report.circuit = whole(equations, y, scales);
-  if (!report.circuit.ok && pass_time(equations, y)) {
+  if (!report.circuit.ok && !y.empty() && pass_time(equations, y)) {
     report.through_time = true;
     report.circuit = whole(equations, y, scales);
   }
   if (report.circuit.ok) {
     std::vector<double> rates(y.size());
     equations.rates(y, rates);
-    const std::string objection = equations.objection();
+    const std::string objection = equations.objection(y);
     if (!objection.empty()) {
       report.circuit.ok = false;
       report.circuit.message = objection;

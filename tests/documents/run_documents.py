@@ -16,7 +16,7 @@ a name of a value, the value, its unit (none for a pH) and the tolerance in the 
   ph@STEP                               in a beaker after a step, by its name                          [-]
   dissolved.COMPONENT@STEP              all forms of it in the liquor                                  [mol/L, mol]
   free.SPECIES@STEP                     molality of one species                                        [mol/kg]
-  formed.MINERAL@STEP                   solid present                                                  [mol, mmol]
+  formed.MINERAL@STEP                   solid present                                                  [g, mol]
 """
 import glob
 import os
@@ -29,8 +29,11 @@ import unittest
 
 import h5py
 import numpy
+import yaml
 
-sys.path.insert(0, os.path.join(os.path.dirname(os.path.abspath(__file__)), "..", "abuse"))
+HERE = os.path.dirname(os.path.abspath(__file__))
+sys.path[:0] = [os.path.join(HERE, "..", "abuse"), os.path.join(HERE, "..", "..", "tools")]
+import check_sources
 import command_support as support
 
 LEAT = support.binary()
@@ -109,7 +112,7 @@ class Commands(InACopy):
 
 EXPECTED = re.compile(r"(?P<name>\S[^=]*?)\s*=\s*(?P<value>[-+.\deE]+)(?:\s+(?P<unit>[^\s\d]\S*))?\s+within\s+(?P<tolerance>[.\deE+-]+)")
 FACTORS = {("recovery", "%"): 100, ("extraction", "%"): 100, ("ph", ""): 1, ("dissolved", "mol/L"): 1e-3, ("dissolved", "mol"): 1,
-           ("free", "mol/kg"): 1, ("formed", "mol"): 1, ("formed", "mmol"): 1000}  # to the typed unit
+           ("free", "mol/kg"): 1, ("formed", "mol"): 1, ("formed", "g"): 1}  # to the typed unit
 
 
 class BadExpectation(Exception):
@@ -171,8 +174,18 @@ class Results:
         if word == "free":
             return self.data["molality"][step, self.index("species", rest)]
         if word == "formed":
-            return self.data["formed"][step, self.index("mineral", rest)]
+            amount = self.data["formed"][step, self.index("mineral", rest)]
+            return amount * self.molar_mass(rest) if unit == "g" else amount
         raise BadExpectation(f"'{word}' is read from runs only")
+
+
+    def molar_mass(self, mineral):
+        """g/mol, from the formula that stands alone on the left of its solubility reaction."""
+        reaction = self.data["constant_reaction"][self.index("constant", mineral)].decode()
+        atoms, _ = check_sources.parse_formula(reaction.split(" = ")[0])
+        with open(os.path.join(support.TREE, "models", "data", "atomic_weights.yaml"), encoding="utf-8") as file:
+            weights = {one["element"]: float(one["weight"].split()[0]) for one in yaml.safe_load(file)["atomic_weights"]}
+        return sum(count * weights[element] for element, count in atoms.items())
 
 
 def head_lines(path, word):
