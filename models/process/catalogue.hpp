@@ -80,7 +80,7 @@ struct LawKind {
   std::string name;
   std::string summary;
   std::vector<ParameterSpec> parameters;
-  bool takes_orders = false;              // may have orders in the liquor and reference conditions
+  bool takes_orders = true;               // may have orders in the liquor and reference conditions
   std::function<std::shared_ptr<const RateLaw>(const LawSettings&)> make;
 };
 

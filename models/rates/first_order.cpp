@@ -12,8 +12,8 @@ constexpr double linear_below = 1e-9;  // of the reference concentration
 
 class FirstOrder final : public RateLaw {
  public:
-  explicit FirstOrder(const LawSettings& settings)
-      : constant_(settings.values.at("constant")), orders_(settings.orders), has_saturation_(settings.saturation_phase >= 0) {
+  FirstOrder(std::string name, const LawSettings& settings)
+      : name_(std::move(name)), constant_(settings.values.at("constant")), orders_(settings.orders), has_saturation_(settings.saturation_phase >= 0) {
     const auto value = [&](const char* name, double otherwise) {
       const auto found = settings.values.find(name);
       return found == settings.values.end() ? otherwise : found->second;
@@ -26,7 +26,7 @@ class FirstOrder final : public RateLaw {
     probes_.insert(probes_.end(), settings.needed.begin(), settings.needed.end());
   }
 
-  std::string_view name() const override { return "first_order"; }
+  std::string_view name() const override { return name_; }
   std::span<const Probe> probes() const override { return probes_; }
 
   double speed(std::span<const double> values, double temperature, std::span<double> slopes) const override {
@@ -65,6 +65,7 @@ class FirstOrder final : public RateLaw {
     return {m / (m + used_up), used_up / ((m + used_up) * (m + used_up))};
   }
 
+  std::string name_;
   double constant_;                // k [1/s]
   double activation_energy_ = 0;   // [J/mol]
   double reference_temperature_ = 298.15;  // [K]
@@ -84,11 +85,12 @@ LawKind first_order_kind() {
       {"constant", "1/s", true, {}, 0, 1e3, "rate constant at the conditions of `at`", ""},
       {"activation_energy", "J/mol", false, 0.0, 0, 5e5, "Arrhenius activation energy; without it the constant holds at every temperature", ""},
       {"at_temperature", "K", false, {}, 200, 500, "temperature at which the constant was measured", ""}};
-  kind.takes_orders = true;
-  kind.make = make_first_order;
+  kind.make = [](const LawSettings& settings) { return make_first_order("first_order", settings); };
   return kind;
 }
 
-std::shared_ptr<const RateLaw> make_first_order(const LawSettings& settings) { return std::make_shared<FirstOrder>(settings); }
+std::shared_ptr<const RateLaw> make_first_order(const std::string& name, const LawSettings& settings) {
+  return std::make_shared<FirstOrder>(name, settings);
+}
 
 }  // namespace leat

@@ -11,7 +11,7 @@ namespace leat {
 //           1 - Omega is the linear form of transition-state theory
 LawKind first_order_kind();
 
-// The law from its settings (values: constant [1/s], activation_energy [J/mol], at_temperature [K]).
-std::shared_ptr<const RateLaw> make_first_order(const LawSettings& settings);
+// The law, under the name of a kind, from its settings (values: constant [1/s], activation_energy [J/mol], at_temperature [K]).
+std::shared_ptr<const RateLaw> make_first_order(const std::string& name, const LawSettings& settings);
 
 }  // namespace leat

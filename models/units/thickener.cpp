@@ -39,7 +39,8 @@ class Thickener final : public UnitOperationOf<Thickener> {
       over[layout.lot(k)] = Real(0.0);
       solids += Real(context_->lots[k].molar_mass) * in.inlet[layout.lot(k)];
     }
-    Real share = solids * Real((1 - solids_fraction_) / solids_fraction_) / liquor;
+    Real share(0.0);
+    if (value_of(liquor) > 0) share = solids * Real((1 - solids_fraction_) / solids_fraction_) / liquor;
     if (value_of(share) > 1) share = Real(1.0);  // objection() reports it if the solution stays there
     for (int j = 0; j <= layout.components; ++j) {
       const Real carried = share * over[j];

@@ -199,15 +199,17 @@ bool CircuitEquations::unit_rates(int u, std::span<const double> state, std::spa
 // Nothing that a cell could be solved for reaches a unit: its outlets stand still.
 bool CircuitEquations::dry(std::span<const double> inlet) const { return !(inlet[chem_ - 1] > 1e-9 * 55500 * circuit_->flow_scale); }
 
-void CircuitEquations::refresh_passing() {
+bool CircuitEquations::refresh_passing() {
   last_y_.clear();
   for (int u : circuit_->passing) {
     const CircuitUnit& unit = circuit_->units[u];
     inlet_of(u, inlet_);
-    if ((cells_[u].used && dry(inlet_)) || !solve_cell(u, std::span<const double>(inlet_).first(chem_), false)) continue;
-    run_unit(u, {}, inlet_, {}, {flows_.data() + unit.first_stream * width_, unit.operation->traits().outlets.size() * width_},
-             {ledger_.data() + unit.first_ledger, unit.operation->traits().ledger.size()});
+    if (cells_[u].used && (dry(inlet_) || !solve_cell(u, std::span<const double>(inlet_).first(chem_), false))) continue;
+    if (!run_unit(u, {}, inlet_, {}, {flows_.data() + unit.first_stream * width_, unit.operation->traits().outlets.size() * width_},
+                  {ledger_.data() + unit.first_ledger, unit.operation->traits().ledger.size()}))
+      return false;
   }
+  return true;
 }
 
 std::string CircuitEquations::objection(std::span<const double> y) const {

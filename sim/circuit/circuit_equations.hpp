@@ -40,8 +40,9 @@ class CircuitEquations {
   EquilibriumSolver& solver() { return solver_; }
   std::string complaint;
 
-  // Brings the units that only pass on up to date with the streams that reach them; those that nothing reaches are left.
-  void refresh_passing();
+  // Brings the units that only pass on up to date with the streams that reach them; those that nothing reaches, or
+  // that have no equilibrium yet, are left. False if a unit gives what is not finite.
+  bool refresh_passing();
 
   // Inlet of a unit as the sum of its streams, after rates().
   void inlet_of(int unit, std::span<double> inlet) const;

@@ -95,7 +95,11 @@ SolveReport sweep(CircuitEquations& equations, std::vector<double>& y, const Sca
   for (int u : circuit.holding) {
     const CircuitUnit& unit = circuit.units[u];
     StageProblem problem(equations, u);
-    equations.refresh_passing();
+    if (!equations.refresh_passing()) {
+      worst.ok = false;
+      worst.message = equations.complaint;
+      return worst;
+    }
     equations.inlet_of(u, problem.inlet());
     std::span<double> x(y.data() + unit.first_state, unit.states);
     const double temperature = unit.operation->temperature();
@@ -208,6 +212,8 @@ SteadyReport solve_steady(CircuitEquations& equations, std::vector<double>& y) {
   for (report.sweeps = 0; report.sweeps < first_sweeps; ++report.sweeps)
     report.stages = sweep(equations, y, scales, report.sweeps == 0);
   report.circuit = whole(equations, y, scales);
+  if (!report.circuit.ok && !report.stages.ok && report.stages.message.find("not finite") != std::string::npos)
+    report.circuit.message = report.stages.message;  // what a later vessel says of it is a consequence
   if (!report.circuit.ok && !y.empty() && pass_time(equations, y)) {
     report.through_time = true;
     report.circuit = whole(equations, y, scales);
