@@ -13,6 +13,7 @@ namespace {
 
 constexpr int first_sweeps = 2;
 constexpr double transient_turnovers = 30;  // of the whole hold-up, in the fallback
+constexpr double torn_lag = 20;             // a torn stream follows within a second; rings of them within this [s]
 
 // One stage at fixed inlet.
 class StageProblem final : public NonlinearProblem {
@@ -147,8 +148,9 @@ SolveReport whole(CircuitEquations& equations, std::vector<double>& y, const Sca
 // The long way: let time pass from where the sweeps ended.
 bool pass_time(CircuitEquations& equations, std::vector<double>& y) {
   const Circuit& circuit = equations.circuit();
-  double volume = 0;
-  for (int u : circuit.holding) volume += circuit.units[u].operation->live_volume();
+  double horizon = 0;
+  for (int u : circuit.holding)
+    horizon += transient_turnovers * (circuit.units[u].torn ? torn_lag : circuit.units[u].operation->live_volume() / circuit.flow_scale);
   TimeSystem system(equations, {});
   std::vector<double> absolute = state_scales(circuit);
   for (double& one : absolute) one *= 1e-6;
@@ -156,7 +158,7 @@ bool pass_time(CircuitEquations& equations, std::vector<double>& y) {
   settings.relative_tolerance = 1e-4;
   settings.most_steps = 20000;
   CvodeSolver solver(system, 0, y, absolute, settings);
-  if (!solver.advance(transient_turnovers * volume / circuit.flow_scale).ok) return false;
+  if (!solver.advance(horizon).ok) return false;
   std::copy(solver.state().begin(), solver.state().end(), y.begin());
   return true;
 }
