@@ -244,15 +244,23 @@ class Compiler {
       for (const std::string& name : *list) {
         const SolidEntry* entry = library_.find_solid(name);
         if (!entry || !entry->constant)
-          diagnostics_.fault(Code::unknown_name, place_,
+          diagnostics_.fault(Code::unknown_name, place_of(name),
                              "'" + name + "' is not a solid with a constant" + did_you_mean(name, solids));
       }
+    for (const std::string& name : request_.may_form)
+      if (std::find(request_.forms_slowly.begin(), request_.forms_slowly.end(), name) != request_.forms_slowly.end())
+        diagnostics_.fault(Code::duplicate, place_of(name), name + " stands under may_form and under forms_slowly");
     for (const std::string& name : request_.families)
       if (std::find(families.begin(), families.end(), name) == families.end())
-        diagnostics_.fault(Code::unknown_name, place_, "'" + name + "' is not a family of complexes" + did_you_mean(name, families));
+        diagnostics_.fault(Code::unknown_name, place_of(name), "'" + name + "' is not a family of complexes" + did_you_mean(name, families));
     for (const std::string& name : request_.only)
       if (!library_.find_species(name) && !library_.find_solid(name) && !library_.component(name))
-        diagnostics_.fault(Code::unknown_name, place_, "'" + name + "' is not in the library" + did_you_mean(name, species));
+        diagnostics_.fault(Code::unknown_name, place_of(name), "'" + name + "' is not in the library" + did_you_mean(name, species));
+  }
+
+  Place place_of(const std::string& name) const {
+    const auto found = request_.places.find(name);
+    return found == request_.places.end() ? place_ : found->second;
   }
 
   const SpeciesLibrary& library_;

@@ -99,6 +99,7 @@ struct ChemistryRequest {
   bool one_kg_water_per_litre = false;
   double fixed_debye_huckel_a = 0;
   std::shared_ptr<const ActivityModel> activity;
+  std::map<std::string, Place> places;          // where names of the lists stand, for faults
 };
 
 // Compiles the set; faults (unknown names, a reaction that does not balance) go to `diagnostics`.

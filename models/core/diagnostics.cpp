@@ -57,6 +57,9 @@ std::string to_string(const Diagnostic& diagnostic) {
 }
 
 void Diagnostics::fault(Code code, Place place, std::string text) {
+  // The same thing found twice, by two readers or in a liquor used twice, is told once.
+  for (const Diagnostic& known : faults_)
+    if (known.place.line == place.line && known.place.column == place.column && known.place.file == place.file && known.text == text) return;
   faults_.push_back({code, std::move(place), std::move(text)});
 }
 

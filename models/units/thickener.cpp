@@ -57,7 +57,7 @@ class Thickener final : public UnitOperationOf<Thickener> {
     for (int k = 0; k < layout.lots; ++k) solids += context_->lots[k].molar_mass * in.inlet[layout.lot(k)];
     for (int j = 0; j <= layout.components; ++j) mass += context_->chemistry->component_mass[j] * in.inlet[j];
     for (int k = 0; k < layout.lots; ++k) mass += context_->lots[k].molar_mass * in.inlet[layout.lot(k)];
-    if (solids > solids_fraction_ * mass)
+    if (mass > 0 && solids > solids_fraction_ * mass)
       return fmt::format("cannot thicken: its feed has {:.1f} % solids, its underflow is asked for {:.1f} %", 100 * solids / mass,
                          100 * solids_fraction_);
     return {};

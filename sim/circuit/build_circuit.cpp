@@ -4,6 +4,7 @@
 
 #include <algorithm>
 #include <cmath>
+#include <exception>
 
 #include "models/core/constants.hpp"
 #include "models/core/nearest.hpp"
@@ -21,21 +22,22 @@ class CircuitBuilder {
       : flowsheet_(flowsheet), library_(library), catalogue_(catalogue), diagnostics_(diagnostics),
         maker_(library, flowsheet.liquors, diagnostics) {}
 
+  // Goes as far as it can, so that one pass tells every fault; nothing is returned after one.
   std::optional<BuiltCase> build(BuiltCase built) {
-    plan_ = plan_lots(flowsheet_, library_, diagnostics_);
-    chemistry_ = compile();
-    if (!diagnostics_.ok()) return std::nullopt;
+    attempt([&] { plan_ = plan_lots(flowsheet_, library_, diagnostics_); });
+    attempt([&] { chemistry_ = compile(); });
+    if (!chemistry_) return std::nullopt;
     pressure_ = pressure_at(flowsheet_.altitude);
     built.site_pressure = pressure_;
     built.at_equilibrium = plan_.at_equilibrium;
     for (const PhaseRow& phase : chemistry_->phases) (phase.may_form ? built.may_form : built.watched).push_back(phase.name);
-    make_context();
-    if (!diagnostics_.ok()) return std::nullopt;
-    make_feeds();
+    attempt([&] { make_context(); });
+    if (!context_) return std::nullopt;
+    attempt([&] { make_feeds(); });
     const CircuitParts parts{&flowsheet_, &library_, &catalogue_, &plan_,     chemistry_,  context_,
                              elements_,   feed_streams_, fresh_solids_, reagents_, dry_solids_, pressure_};
-    built.steady = join_circuit(parts, true, diagnostics_);
-    if (flowsheet_.history) built.timed = join_circuit(parts, false, diagnostics_);
+    attempt([&] { built.steady = join_circuit(parts, true, diagnostics_); });
+    if (flowsheet_.history) attempt([&] { built.timed = join_circuit(parts, false, diagnostics_); });
     if (!diagnostics_.ok()) return std::nullopt;
     check_metals(*built.steady);
     built.metals = flowsheet_.metals;
@@ -45,6 +47,16 @@ class CircuitBuilder {
   }
 
  private:
+  // After a fault a value may be missing that later steps count on; what then fails is a consequence and is not told.
+  template <class Step>
+  void attempt(Step&& step) {
+    try {
+      step();
+    } catch (const std::exception&) {
+      if (diagnostics_.ok()) throw;
+    }
+  }
+
   void check_metals(const Circuit& circuit) {
     std::vector<std::string> fed;
     for (std::size_t e = 0; e < circuit.elements.size(); ++e)
@@ -69,6 +81,7 @@ class CircuitBuilder {
     ChemistryRequest request;
     request.components.assign(components.begin(), components.end());
     request.families = flowsheet_.chemistry.families;
+    request.places = flowsheet_.chemistry.places;
     request.may_form = flowsheet_.chemistry.may_form;
     request.may_form_given = flowsheet_.chemistry.may_form_given;
     request.forms_slowly = flowsheet_.chemistry.forms_slowly;
@@ -106,10 +119,14 @@ class CircuitBuilder {
     for (const StreamSpec& stream : flowsheet_.streams) {
       if (stream.gas) continue;
       const double temperature = temperature_of(stream);
-      const auto feed = feeds.make(stream, temperature);
-      if (!feed) continue;
       CircuitStream made;
       made.name = stream.name;
+      std::optional<Feed> feed;
+      attempt([&] { feed = feeds.make(stream, temperature); });
+      if (!feed) {  // its fault is told; the name is still a stream
+        feed.emplace();
+        feed->flow.assign(context_->layout.size(), 0.0);
+      }
       made.feed = feed->flow;
       made.temperature = temperature;
       feed_streams_.push_back(made);

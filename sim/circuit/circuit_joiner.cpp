@@ -30,11 +30,11 @@ class Joiner {
     circuit->dry_solids = parts_.dry_solids;
     const std::vector<UnitSpec> specs = members();
     for (const UnitSpec& spec : specs) add_unit(*circuit, spec, steady);
-    if (!diagnostics_.ok()) return circuit;
+    const std::size_t before = diagnostics_.faults().size();
     connect(*circuit, specs);
     name_leaving(*circuit);
     check_ends(*circuit, specs);
-    if (!diagnostics_.ok()) return circuit;
+    if (diagnostics_.faults().size() > before) return circuit;
     pass_temperatures(*circuit, specs);
     order_circuit(*circuit, steady, specs, diagnostics_);
     if (!diagnostics_.ok()) return circuit;
@@ -128,6 +128,7 @@ class Joiner {
   int stream_index(const Circuit& circuit, const std::string& name, const Place& place) {
     std::vector<std::string> names;
     for (const CircuitStream& stream : circuit.streams) names.push_back(stream.name);
+    for (const LeavesSpec& one : parts_.flowsheet->leaves) names.push_back(one.name);
     const int direct = circuit.find_stream(name);
     if (direct >= 0) return direct;
     // A unit with one outlet by its own name; a train by its last member.
@@ -192,8 +193,13 @@ class Joiner {
     // pregnant_liquor names a stream, or a name under leaves.
     for (std::size_t s = 0; s < circuit.streams.size(); ++s)
       if (!parts_.flowsheet->pregnant_liquor.empty() && circuit.streams[s].leaves_as == parts_.flowsheet->pregnant_liquor) circuit.pregnant_liquor = static_cast<int>(s);
-    if (circuit.pregnant_liquor < 0 && !parts_.flowsheet->pregnant_liquor.empty())
-      circuit.pregnant_liquor = stream_index(circuit, parts_.flowsheet->pregnant_liquor, parts_.flowsheet->pregnant_place);
+    const std::string& pregnant = parts_.flowsheet->pregnant_liquor;
+    const bool under_leaves = std::any_of(parts_.flowsheet->leaves.begin(), parts_.flowsheet->leaves.end(),
+                                          [&](const LeavesSpec& one) { return one.name == pregnant; });  // its own fault is told there
+    if (circuit.pregnant_liquor < 0 && !pregnant.empty() && !under_leaves)
+      circuit.pregnant_liquor = stream_index(circuit, pregnant, parts_.flowsheet->pregnant_place);
+    if (circuit.pregnant_liquor >= 0 && circuit.streams[circuit.pregnant_liquor].source < 0)
+      diagnostics_.fault(Code::bad_data, parts_.flowsheet->pregnant_place, "pregnant_liquor is " + pregnant + ", which is a feed; name an outlet");
   }
 
   void check_ends(const Circuit& circuit, const std::vector<UnitSpec>& specs) {

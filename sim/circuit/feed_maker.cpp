@@ -14,12 +14,20 @@ double FeedMaker::mass_of(const std::vector<double>& amounts) const {
 }
 
 std::optional<Feed> FeedMaker::make(const StreamSpec& stream, double temperature) {
+  constexpr double most = 1e6;  // no plant's stream [m3/s or kg/s]
+  const Quantity& rate = stream.rate.quantity;
+  for (const char* unit : {"m3/s", "kg/s"})
+    if (convertible(rate.unit, unit) && !(convert(rate, unit) < most)) {
+      diagnostics_.fault(Code::out_of_range, stream.rate.place, fmt::format("{} {} is out of range; allowed is less than {:.0e} {}", rate.number, rate.unit, most, unit));
+      return std::nullopt;
+    }
   if (!stream.solids.empty()) return solids(stream, temperature);
   if (!stream.reagent.empty()) return reagent(stream, temperature);
   return liquor(stream, temperature);
 }
 
 std::optional<Feed> FeedMaker::liquor(const StreamSpec& stream, double temperature) {
+  if (!stream.liquor) return std::nullopt;
   const auto amounts = maker_.per_volume(*stream.liquor, *context_.chemistry, temperature);
   if (!amounts) return std::nullopt;
   double volume = 0;
@@ -36,6 +44,7 @@ std::optional<Feed> FeedMaker::liquor(const StreamSpec& stream, double temperatu
 std::optional<Feed> FeedMaker::reagent(const StreamSpec& stream, double temperature) {
   const auto spec = std::find_if(flowsheet_.reagents.begin(), flowsheet_.reagents.end(),
                                  [&](const ReagentSpec& one) { return one.name == stream.reagent; });
+  if (spec == flowsheet_.reagents.end()) return std::nullopt;
   const Chemistry& chemistry = *context_.chemistry;
   std::vector<double> per_kg(chemistry.component_count() + 1, 0.0);
   double rest = 1;
@@ -60,6 +69,10 @@ std::optional<Feed> FeedMaker::reagent(const StreamSpec& stream, double temperat
         }
   }
   if (spec->counted_as.empty()) counted_share = 1;
+  if (!(counted_share > 0)) {
+    diagnostics_.fault(Code::bad_data, spec->place, fmt::format("reagent {} is counted as {}, of which it has nothing", spec->name, spec->counted_as));
+    return std::nullopt;
+  }
   double charge = 0, size = 0;
   for (int j = 0; j < chemistry.water(); ++j) {
     charge += chemistry.component_charge[j] * per_kg[j];
@@ -113,6 +126,7 @@ bool FeedMaker::add_liquor(const LiquorSpec& liquor, double temperature, double 
 std::optional<Feed> FeedMaker::solids(const StreamSpec& stream, double temperature) {
   const auto spec = std::find_if(flowsheet_.solids.begin(), flowsheet_.solids.end(),
                                  [&](const SolidsSpec& one) { return one.name == stream.solids; });
+  if (spec == flowsheet_.solids.end()) return std::nullopt;
   const double rate = convert(stream.rate.quantity, "kg/s");
   Feed feed;
   feed.flow.assign(context_.layout.size(), 0.0);

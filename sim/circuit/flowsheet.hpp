@@ -46,6 +46,7 @@ struct OverrideSpec {
 
 struct ChemistrySpec {
   std::vector<std::string> families, may_form, forms_slowly, only;
+  std::map<std::string, Place> places;   // where each name of those lists stands
   std::string activity = "davies";
   Place activity_place;
   bool may_form_given = false;

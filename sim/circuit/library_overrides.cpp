@@ -87,6 +87,24 @@ SpeciesLibrary with_overrides(const SpeciesLibrary& original, const ChemistrySpe
       if (entry.name == spec.name) species = &entry;
     for (SolidEntry& entry : library.solids)
       if (entry.name == spec.name && entry.constant) solid = &entry;
+    if (!spec.reaction.empty() && (species || solid)) {
+      const auto terms = parse_reaction(spec.reaction, fault);
+      const std::string own = species ? spec.name : solid->formula_text;
+      double makes = 0;
+      if (terms)
+        for (const ReactionTerm& term : *terms)
+          if (term.name == own) makes += term.coefficient;
+      if (!terms || !balances(*terms, fault)) {
+        diagnostics.fault(Code::does_not_balance, spec.place, "'" + spec.reaction + "': " + fault);
+        continue;
+      }
+      if (makes != (species ? 1 : -1) || !spec.log10_k) {
+        diagnostics.fault(Code::bad_data, spec.place,
+                          species ? "a reaction of " + own + " makes one of it and goes with log10_k" : "a reaction of " + spec.name + " dissolves one " + own + " and goes with log10_k");
+        continue;
+      }
+      (species ? species->reaction : solid->reaction) = *terms;
+    }
     if (species) {
       if (spec.log10_solubility) {
         diagnostics.fault(Code::bad_data, spec.place, spec.name + " is dissolved; write log10_beta or log10_k");

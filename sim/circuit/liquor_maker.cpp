@@ -47,6 +47,10 @@ bool LiquorMaker::resolve(const std::string& name, const Place& place, Component
       amounts = {};
       return components_of(library_, entry.name, amounts, molar_mass, fault);
     }
+  if (const SolidEntry* solid = library_.find_solid(name); solid && !solid->constant) {
+    diagnostics_.fault(Code::no_law, place, "'" + name + "' is a solid without a solubility constant: no liquor can be made with it");
+    return false;
+  }
   diagnostics_.fault(Code::unknown_name, place, "'" + name + "' is not known: " + fault + did_you_mean(name, known_names(library_)));
   return false;
 }

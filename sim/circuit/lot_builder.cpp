@@ -275,6 +275,9 @@ std::shared_ptr<const RateLaw> make_law(const LotPlan::Entry& entry, const Speci
     diagnostics.fault(Code::missing_key, entry.law.place, entry.name + ": an activation energy needs the temperature its constant was measured at; write at: {temperature: 25 degC}");
   if (!kind.takes_orders && !entry.law.orders.empty())
     diagnostics.fault(Code::not_supported, entry.law.orders_place, entry.name + ": the law " + kind.name + " takes no orders");
+  for (const auto& [name, amount] : entry.law.at)
+    if (name != "temperature" && std::none_of(entry.law.orders.begin(), entry.law.orders.end(), [&](const auto& one) { return one.first == name; }))
+      diagnostics.fault(Code::bad_data, amount.place, entry.name + ": a reference concentration of " + name + " stands here, but there is no order in it");
   std::set<int> ordered;
   for (const auto& [name, order] : entry.law.orders) {
     const auto probe = probe_of(name, chemistry, library);

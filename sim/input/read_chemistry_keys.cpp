@@ -296,8 +296,11 @@ ChemistrySpec KeyReader::chemistry(const YamlNode& map) {
   typed_.only_keys(map, keys);
   const auto list = [&](const char* key, std::vector<std::string>& value) {
     const YamlNode* node = map.find(key);
-    if (node) value = names(*node);
-    return node != nullptr;
+    if (!node) return false;
+    value = names(*node);
+    for (const YamlNode& item : node->items) read.places.emplace(item.text, item.place);
+    if (node->is_scalar()) read.places.emplace(node->text, node->place);
+    return true;
   };
   list("families", read.families);
   list("forms_slowly", read.forms_slowly);

@@ -78,6 +78,9 @@ HistorySpec FlowsheetReader::history(const YamlNode& map) {
   if (every) read.every = typed_.quantity(*every, "s", shortest_time).value_or(0);
   if (read.until > 0 && read.every > read.until)
     fault(Code::out_of_range, every->place, fmt::format("{} is longer than the whole history of {}", in_quotes(every->text), in_quotes(until->text)));
+  constexpr double most_rows = 100000;
+  if (read.every > 0 && read.until / read.every > most_rows)
+    fault(Code::out_of_range, every->place, fmt::format("{} stores {:.3g} rows; write a longer step, {:.0f} rows are the most", in_quotes(every->text), read.until / read.every, most_rows));
   return read;
 }
 

@@ -84,6 +84,9 @@ std::optional<double> TypedReader::read_quantity(const YamlNode& node, std::stri
     diagnostics_.fault(Code::bad_quantity, node.place, shown(node.text) + ": " + error.what());
     return std::nullopt;
   }
+  // The ends of a range are allowed: a unit's rounding (95 %) must not put them outside.
+  if (std::isfinite(min) && std::abs(value - min) <= 1e-12 * std::abs(min)) value = min;
+  if (std::isfinite(max) && std::abs(value - max) <= 1e-12 * std::abs(max)) value = max;
   // Written as "not inside" so that nothing but a number inside passes.
   if (!(value >= min && value <= max)) {
     diagnostics_.fault(Code::out_of_range, node.place, fmt::format("{} is out of range; allowed is {}", shown(node.text), range_text(min, max, si_unit)));

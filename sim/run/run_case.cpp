@@ -31,18 +31,19 @@ void choose_reported(const std::vector<std::string>& metals, RunResult& result) 
   }
 }
 
-std::string steady_failure(const SteadyReport& report) {
+std::string steady_failure(const SteadyReport& report, bool has_history) {
   std::string text = "the steady state was not found: " + report.circuit.message;
   if (!report.circuit.worst.empty())
     text += fmt::format("; worst equation {} ({:.2g} of its scale)", report.circuit.worst, report.circuit.largest_residual);
-  return text + ". Try a larger make-up or bleed, check that every metal has a way out, or run it through time with a history";
+  text += ". Try a larger make-up or bleed, and check that everything fed has a way out";
+  return has_history ? text : text + "; a history shows where it goes through time";
 }
 
-bool run_steady(RunResult& result, std::vector<double>& y) {
+bool run_steady(RunResult& result, bool has_history, std::vector<double>& y) {
   CircuitEquations equations(result.circuit);
   result.steady_report = solve_steady(equations, y);
   if (!result.steady_report.circuit.ok) {
-    result.failure = steady_failure(result.steady_report);
+    result.failure = steady_failure(result.steady_report, has_history);
     return false;
   }
   SnapshotMaker maker(equations, result);
@@ -106,7 +107,7 @@ bool run_timed(const HistorySpec& history, std::shared_ptr<const Circuit> circui
     const std::string objection = reading.objection(solver.state());
     const std::string fault = row == 0 ? "" : closure_fault(snapshot.closures, true);
     if (!fault.empty() || !objection.empty()) {
-      result.failure = fmt::format("at {:.6g} h, {}", t / 3600, fault.empty() ? objection : "the run does not close: " + fault);
+      result.failure = fmt::format("at {:.6g} h, {}", t / 3600, objection.empty() ? "the run does not close: " + fault : objection);
       return false;
     }
     result.history.push_back(std::move(snapshot));
@@ -143,7 +144,7 @@ RunResult run_case(const Flowsheet& flowsheet, const BuiltCase& built, const Run
   result.site_pressure = built.site_pressure;
   choose_reported(built.metals, result);
   std::vector<double> steady;
-  result.steady_ok = run_steady(result, steady);
+  result.steady_ok = run_steady(result, built.timed != nullptr, steady);
   const bool from_steady = built.timed && built.start.empty();
   if (built.timed && (result.steady_ok || !from_steady)) {
     result.timed = true;

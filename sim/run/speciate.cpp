@@ -54,6 +54,7 @@ class Bench {
     ChemistryRequest request;
     request.components.assign(components.begin(), components.end());
     request.families = beaker_.chemistry.families;
+    request.places = beaker_.chemistry.places;
     request.may_form = beaker_.chemistry.may_form;
     request.may_form_given = beaker_.chemistry.may_form_given;
     request.forms_slowly = beaker_.chemistry.forms_slowly;

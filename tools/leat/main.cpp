@@ -1,11 +1,15 @@
 #include <CLI/CLI.hpp>
 #include <fmt/format.h>
 
+#include <csignal>
+#include <system_error>
+
 #include "tools/leat/verbs.hpp"
 
 // The command: reads its words, hands them to a verb, turns what escapes into an exit code.
 int main(int argc, char** argv) {
   using namespace leat;
+  std::signal(SIGXFSZ, SIG_IGN);  // a file size limit is an error to report, not a death
   CLI::App app{"leat: leach circuits in ammonia, chloride or cyanide, from a YAML flowsheet to metal recovery by complex family"};
   app.set_version_flag("--version", program_name());
   app.require_subcommand(1);
@@ -33,6 +37,9 @@ int main(int argc, char** argv) {
     if (*constants) return constants_verb(pattern);
   } catch (const std::bad_alloc&) {
     fmt::print(stderr, "out of memory\n");
+    return Exit::machine_trouble;
+  } catch (const std::system_error& error) {
+    fmt::print(stderr, "trouble with the machine: {}\n", error.what());
     return Exit::machine_trouble;
   } catch (const std::exception& error) {
     fmt::print(stderr, "this is a fault of leat itself: {}\n", error.what());

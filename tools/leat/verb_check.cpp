@@ -74,7 +74,7 @@ int check_verb(const std::string& file) {
     return Exit::done;
   }
   const auto flowsheet = read_flowsheet(text, file, catalogue, diagnostics);
-  if (!flowsheet || !diagnostics.ok()) return tell_faults(diagnostics, file);
+  if (!flowsheet) return tell_faults(diagnostics, file);
   const auto built = build_circuit(*flowsheet, library, catalogue, diagnostics);
   if (!built || !diagnostics.ok()) return tell_faults(diagnostics, file);
   tell_cautions(diagnostics);

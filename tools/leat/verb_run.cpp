@@ -20,7 +20,7 @@ int run_verb(const RunArguments& arguments) {
   const std::string kind = file_kind(text, arguments.file, diagnostics);
   if (kind == "beaker") return speciate_verb(arguments);
   const auto flowsheet = read_flowsheet(text, arguments.file, catalogue, diagnostics);
-  if (!flowsheet || !diagnostics.ok()) return tell_faults(diagnostics, arguments.file);
+  if (!flowsheet) return tell_faults(diagnostics, arguments.file);
   const auto built = build_circuit(*flowsheet, library, catalogue, diagnostics);
   if (!built || !diagnostics.ok()) return tell_faults(diagnostics, arguments.file);
   tell_cautions(diagnostics);
@@ -34,7 +34,6 @@ int run_verb(const RunArguments& arguments) {
     fmt::print(stderr, "{}: {}\n", arguments.file, result.failure);
     return Exit::not_solved;
   }
-  print_run(result);
   const std::string out = arguments.out.empty() ? default_output(arguments.file) : arguments.out;
   const ResultSet set = layout_of(result, *built->library, {base_name(arguments.file), text, flowsheet->title, program_name()});
   const FileOutcome written = write_result_file(set, out);
@@ -42,6 +41,7 @@ int run_verb(const RunArguments& arguments) {
     fmt::print(stderr, "{}\n", written.message);
     return Exit::machine_trouble;
   }
+  print_run(result);
   fmt::print("\nWritten to {} (HDF5, also netCDF-4; variables in outputs/README.md)\n", out);
   return Exit::done;
 }

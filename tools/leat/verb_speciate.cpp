@@ -104,6 +104,12 @@ int speciate_verb(const RunArguments& arguments) {
                  step.closure.mass_action);
       return Exit::not_solved;
     }
+  const std::string out = arguments.out.empty() ? default_output(arguments.file) : arguments.out;
+  const FileOutcome written = write_result_file(layout_of(*result, library, {base_name(arguments.file), text, beaker->title, program_name()}), out);
+  if (!written.ok) {
+    fmt::print(stderr, "{}\n", written.message);
+    return Exit::machine_trouble;
+  }
   if (!beaker->title.empty()) fmt::print("{}\n\n", beaker->title);
   print_steps(*result);
   print_holders(*result);
@@ -112,12 +118,6 @@ int speciate_verb(const RunArguments& arguments) {
   for (const BeakerStep& step : result->steps) balance = std::max(balance, step.closure.balance), action = std::max(action, step.closure.mass_action);
   fmt::print("\nClosure: balance {:.1e}, mass action {:.1e} (ln), worst step\n", balance, action);
   print_cautions(result->cautions);
-  const std::string out = arguments.out.empty() ? default_output(arguments.file) : arguments.out;
-  const FileOutcome written = write_result_file(layout_of(*result, library, {base_name(arguments.file), text, beaker->title, program_name()}), out);
-  if (!written.ok) {
-    fmt::print(stderr, "{}\n", written.message);
-    return Exit::machine_trouble;
-  }
   fmt::print("\nWritten to {} (HDF5, also netCDF-4; variables in outputs/README.md)\n", out);
   return Exit::done;
 }
