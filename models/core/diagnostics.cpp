@@ -57,9 +57,6 @@ std::string to_string(const Diagnostic& diagnostic) {
 }
 
 void Diagnostics::fault(Code code, Place place, std::string text) {
-  // The same thing found twice, by two readers or in a liquor used twice, is told once.
-  for (const Diagnostic& known : faults_)
-    if (known.place.line == place.line && known.place.column == place.column && known.place.file == place.file && known.text == text) return;
   faults_.push_back({code, std::move(place), std::move(text)});
 }
 
@@ -67,7 +64,17 @@ void Diagnostics::caution(Code code, Place place, std::string text) {
   cautions_.push_back({code, std::move(place), std::move(text)});
 }
 
-std::vector<Diagnostic> Diagnostics::sorted_faults() const { return by_place(faults_); }
+std::vector<Diagnostic> Diagnostics::sorted_faults() const {
+  // The same thing found twice, by two readers or in a liquor used twice, is told once.
+  std::vector<Diagnostic> told;
+  for (const Diagnostic& fault : by_place(faults_)) {
+    const bool known = std::any_of(told.begin(), told.end(), [&](const Diagnostic& one) {
+      return one.place.file == fault.place.file && one.place.line == fault.place.line && one.place.column == fault.place.column && one.text == fault.text;
+    });
+    if (!known) told.push_back(fault);
+  }
+  return told;
+}
 std::vector<Diagnostic> Diagnostics::sorted_cautions() const { return by_place(cautions_); }
 
 void Diagnostics::add(const Diagnostics& other) {

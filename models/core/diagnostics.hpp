@@ -64,7 +64,7 @@ class Diagnostics {
   const std::vector<Diagnostic>& cautions() const { return cautions_; }
 
   // By place (file, line, column); faults at one place stay in the order they were found.
-  std::vector<Diagnostic> sorted_faults() const;
+  std::vector<Diagnostic> sorted_faults() const;  // by place, each once
   std::vector<Diagnostic> sorted_cautions() const;
 
   // Adds all faults and cautions of another collection behind the own ones.

@@ -81,6 +81,8 @@ class Joiner {
         settings.values[parameter.name] = convert(typed->second.quantity, parameter.unit);
       else if (parameter.otherwise)
         settings.values[parameter.name] = *parameter.otherwise;
+      else if (parameter.required && !diagnostics_.ok())  // told as missing: stands in so that the piping is looked at too
+        settings.values[parameter.name] = std::clamp(1.0, parameter.least, parameter.most);
     }
     if (settings.values.count("draw") && steady && !parts_.flowsheet->history)
       diagnostics_.fault(Code::bad_data, spec.place, spec.name + ": in a steady run a surge keeps its volume and its draw is what enters; drop the draw, or give a history");
