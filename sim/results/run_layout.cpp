@@ -1,5 +1,6 @@
 #include "sim/results/run_layout.hpp"
 
+#include <algorithm>
 #include <cmath>
 #include <functional>
 
@@ -131,6 +132,69 @@ void add_streams(TimeTable& table, const RunResult& result) {
   table.stream("stream_mass_flow", "mass flow", "kg s-1", [](const StreamSnapshot& s) { return s.mass; });
 }
 
+// What is fed as a reagent and what dissolves from air, beside the streams and vessels it concerns.
+void add_reagents(ResultSet& set, TimeTable& table, const RunResult& result) {
+  const Circuit& circuit = *result.circuit;
+  Variable rate{"reagent_rate", "reagent fed by this stream, counted as reagent_counted_as", "kg s-1", {"stream"}, {}};
+  Variable use{"reagent_consumption", "reagent fed per mass of dry solids fed", "kg kg-1", {"stream"}, {}};
+  TextTable counted{"reagent_counted_as", "compound a reagent is counted as", "stream", {}};
+  for (const CircuitStream& stream : circuit.streams) {
+    const auto found = std::find_if(circuit.reagents.begin(), circuit.reagents.end(), [&](const ReagentUse& one) { return one.stream == stream.name; });
+    const bool is = found != circuit.reagents.end();
+    rate.values.push_back(is ? found->rate : std::nan(""));
+    use.values.push_back(is && circuit.dry_solids > 0 ? found->rate / circuit.dry_solids : std::nan(""));
+    counted.values.push_back(is ? found->counted_as : "");
+  }
+  set.variables.insert(set.variables.end(), {rate, use});
+  set.texts.push_back(counted);
+  table.list("oxygen_taken_up", "oxygen dissolved from air", "mol s-1", {"unit"}, [&](const Snapshot& s) {
+    std::vector<double> out;
+    for (int u : result.vessels) {
+      double sum = std::nan("");
+      for (std::size_t l = 0; l < circuit.ledger_unit.size(); ++l)
+        if (circuit.ledger_unit[l] == u && circuit.chemistry->component_names[circuit.ledger_component[l]] == "O2") sum = s.ledger[l];
+      out.push_back(sum);
+    }
+    return out;
+  });
+}
+
+// The profile at rest of a run that also has a history.
+void add_steady(ResultSet& set, const RunResult& result) {
+  if (!result.steady_ok) return;
+  const Snapshot& steady = result.steady;
+  const auto units = [&](const char* name, const char* meaning, const char* unit, std::vector<std::string> axes,
+                         const std::function<std::vector<double>(const UnitSnapshot&)>& value) {
+    axes.insert(axes.begin(), "unit");
+    Variable variable{name, meaning, unit, axes, {}};
+    for (const UnitSnapshot& one : steady.units) {
+      const std::vector<double> values = value(one);
+      variable.values.insert(variable.values.end(), values.begin(), values.end());
+    }
+    set.variables.push_back(variable);
+  };
+  const auto streams = [&](const char* name, const char* meaning, const char* unit, std::vector<std::string> axes,
+                           const std::function<std::vector<double>(const StreamSnapshot&)>& value) {
+    axes.insert(axes.begin(), "stream");
+    Variable variable{name, meaning, unit, axes, {}};
+    for (const StreamSnapshot& one : steady.streams) {
+      const std::vector<double> values = value(one);
+      variable.values.insert(variable.values.end(), values.begin(), values.end());
+    }
+    set.variables.push_back(variable);
+  };
+  const int contents = result.circuit->context->layout.components + 1;
+  units("steady_ph", "-log10 of the activity of H+ at steady state", "1", {}, [](const UnitSnapshot& u) { return std::vector{u.ph}; });
+  units("steady_molality", "molality of a species at steady state", "mol kg-1", {"species"}, [](const UnitSnapshot& u) { return u.molality; });
+  units("steady_formed", "solid formed at steady state", "mol", {"mineral"}, [](const UnitSnapshot& u) { return u.formed; });
+  units("steady_retained", "fed mineral not dissolved at steady state", "mol", {"lot"}, [](const UnitSnapshot& u) { return u.lots; });
+  streams("steady_stream_flow", "component in liquor and formed solids at steady state", "mol s-1", {"component"},
+          [&](const StreamSnapshot& s) { return std::vector<double>(s.flow.begin(), s.flow.begin() + contents); });
+  streams("steady_stream_dissolved", "component in the liquor at steady state", "mol s-1", {"component"}, [](const StreamSnapshot& s) { return s.dissolved; });
+  streams("steady_stream_pulp_flow", "volume flow of pulp at steady state", "m3 s-1", {}, [](const StreamSnapshot& s) { return std::vector{s.pulp_volume}; });
+  streams("steady_stream_solids_flow", "mass flow of solids at steady state", "kg s-1", {}, [](const StreamSnapshot& s) { return std::vector{s.solids}; });
+}
+
 void add_closures(TimeTable& table) {
   table.per_time("closure_elements", "worst imbalance of an element but H and O", "1", [](const Snapshot& s) { return s.closures.elements; });
   table.per_time("closure_water", "worst imbalance of H and O", "1", [](const Snapshot& s) { return s.closures.water; });
@@ -157,6 +221,8 @@ ResultSet layout_of(const RunResult& result, const SpeciesLibrary& library, cons
   add_recoveries(set, table, result);
   add_units(table);
   add_streams(table, result);
+  add_reagents(set, table, result);
+  add_steady(set, result);
   add_closures(table);
   const CvodeStatistics& cv = result.statistics;
   set.variables.push_back({"newton_iterations", "iterations of the whole-circuit steady solve", "1", {}, {double(result.steady_report.circuit.iterations)}});
@@ -196,6 +262,10 @@ ResultSet layout_of(const BeakerResult& result, const SpeciesLibrary& library, c
   scalar("liquor_volume", "volume of the liquor", "m3", [](const BeakerStep& s) { return s.liquor_volume; });
   scalar("liquor_density", "density of the liquor", "kg m-3", [](const BeakerStep& s) { return s.liquor_density; });
   scalar("proton_added", "protons exchanged to hold a pH", "mol", [](const BeakerStep& s) { return s.proton_added; });
+  scalar("dosed", "compound dosed to reach a pH", "mol", [](const BeakerStep& s) { return s.added.empty() ? std::nan("") : s.added.front(); });
+  TextTable compound{"dosed_compound", "compound dosed to reach a pH", "step", {}};
+  for (const BeakerStep& one : result.steps) compound.values.push_back(one.dosed);
+  set.texts.push_back(compound);
   scalar("closure_cells", "worst imbalance of a component", "1", [](const BeakerStep& s) { return s.closure.balance; });
   scalar("closure_mass_action", "worst |ln IAP - ln K|", "1", [](const BeakerStep& s) { return s.closure.mass_action; });
   const std::size_t components = c.component_names.size();
@@ -204,6 +274,13 @@ ResultSet layout_of(const BeakerResult& result, const SpeciesLibrary& library, c
   list("dissolved", "component in the liquor", "mol", "component", components, [](const BeakerStep& s) -> const std::vector<double>& { return s.dissolved; });
   list("formed", "solid present", "mol", "mineral", c.phases.size(), [](const BeakerStep& s) -> const std::vector<double>& { return s.state.phase_amount; });
   list("saturation_index", "log10 of ion product over constant", "1", "mineral", c.phases.size(), [](const BeakerStep& s) -> const std::vector<double>& { return s.state.log10_omega; });
+  Variable taken{"gas_taken_up", "gas taken up at a held pressure, as its dissolved form", "mol", {"step", "species"}, {}};
+  for (const BeakerStep& one : result.steps)
+    for (const MassActionRow& row : c.species) {
+      const auto found = std::find_if(one.gas_taken_up.begin(), one.gas_taken_up.end(), [&](const auto& gas) { return gas.first == row.name; });
+      taken.values.push_back(found == one.gas_taken_up.end() ? std::nan("") : found->second);
+    }
+  set.variables.push_back(taken);
   add_cautions(set, result.cautions);
   return set;
 }
