@@ -6,10 +6,13 @@ need() {
   done
   [ -n "$missing" ] || return 0
   as_root=""
-  [ "$(id -u)" -eq 0 ] || as_root="sudo"
-  echo "installing:$missing"
+  if [ "$(id -u)" -ne 0 ]; then
+    command -v sudo >/dev/null || { echo "run this as root, or install sudo: packages are missing:$missing" >&2; exit 1; }
+    as_root="sudo"
+  fi
+  echo "installing (on a bare system about 250 MB to download, 2 GB on disk with the build, some minutes):$missing"
   $as_root apt-get update -q
-  DEBIAN_FRONTEND=noninteractive $as_root apt-get install -y -q --no-install-recommends $missing
+  $as_root env DEBIAN_FRONTEND=noninteractive apt-get install -y -q --no-install-recommends $missing
 }
 build_packages="g++ cmake ninja-build pkg-config ccache libsundials-dev libsuitesparse-dev libeigen3-dev libyaml-cpp-dev
   libhdf5-dev libudunits2-dev libfmt-dev libcli11-dev"

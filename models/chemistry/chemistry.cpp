@@ -187,7 +187,7 @@ class Compiler {
       const bool balanced = in(request_.at_equilibrium, entry);
       bool forms = request_.may_form_given ? in(request_.may_form, entry) : entry.forms_readily;
       if (!request_.only.empty()) forms = in(request_.only, entry) && (!request_.may_form_given || forms);
-      const bool watched = in(request_.forms_slowly, entry) || (request_.only.empty() && !request_.may_form_given);
+      const bool watched = in(request_.forms_slowly, entry) || request_.only.empty();  // every solid in play is watched
       if (in(request_.forms_slowly, entry)) forms = false;
       if (!fed && !forms && !watched && !balanced) continue;
       ComponentAmounts amounts;
@@ -252,10 +252,16 @@ class Compiler {
         diagnostics_.fault(Code::duplicate, place_of(name), name + " stands under may_form and under forms_slowly");
     for (const std::string& name : request_.families)
       if (std::find(families.begin(), families.end(), name) == families.end())
-        diagnostics_.fault(Code::unknown_name, place_of(name), "'" + name + "' is not a family of complexes" + did_you_mean(name, families));
+        diagnostics_.fault(Code::unknown_name, place_of(name), "'" + name + "' is not a family of complexes" + did_you_mean(name, families) + "; there is " + list_of(families));
     for (const std::string& name : request_.only)
       if (!library_.find_species(name) && !library_.find_solid(name) && !library_.component(name))
         diagnostics_.fault(Code::unknown_name, place_of(name), "'" + name + "' is not in the library" + did_you_mean(name, species));
+  }
+
+  static std::string list_of(const std::vector<std::string>& names) {
+    std::string list;
+    for (const std::string& one : names) list += (list.empty() ? "" : ", ") + one;
+    return list;
   }
 
   Place place_of(const std::string& name) const {

@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <array>
 #include <cmath>
+#include <string_view>
 
 #include "models/core/constants.hpp"
 
@@ -37,6 +38,9 @@ constexpr std::array<IonFromSalt, 16> ion_from_salt = {{
     {"NH3", "NH3", {}, 1},
 }};
 
+// What a proton changes when ammonia binds it: phi(NH4+) - phi(NH3), from NH4Cl.
+constexpr IonFromSalt ammonium_from_salt = {"NH4^+", "NH4Cl", {{{"Cl^-", 1}, {"NH3", 1}}}, 1};
+
 constexpr double largest_solute_fraction = 0.4;  // the correlation is held there beyond [kg/kg]
 
 }  // namespace
@@ -63,7 +67,10 @@ LiquorVolume::LiquorVolume(const SpeciesLibrary& library, const std::vector<std:
   fixed_.assign(most_components, 0.0);
   std::vector<bool> known(most_components, false);
   if (hydrogen >= 0) known[hydrogen] = true;
-  for (const IonFromSalt& rule : ion_from_salt) {
+  std::vector<IonFromSalt> rules(ion_from_salt.begin(), ion_from_salt.end());
+  const auto ammonia = std::find(component_names.begin(), component_names.end(), "NH3");
+  if (ammonia != component_names.end()) rules.push_back(ammonium_from_salt);
+  for (const IonFromSalt& rule : rules) {
     const auto salt = std::find_if(library.density_salts.begin(), library.density_salts.end(),
                                    [&](const DensitySalt& one) { return one.name == rule.salt; });
     if (salt == library.density_salts.end()) continue;
@@ -76,6 +83,10 @@ LiquorVolume::LiquorVolume(const SpeciesLibrary& library, const std::vector<std:
     row.component = slot(rule.ion);
     known[row.component] = true;
     salts_.push_back(row);
+    if (std::string_view(rule.ion) == "NH4^+") {
+      ammonium_ = row.component;
+      ammonia_ = static_cast<int>(ammonia - component_names.begin());
+    }
   }
   for (int j = 0; j < n; ++j) {
     if (known[j]) continue;
@@ -138,6 +149,18 @@ double LiquorVolume::volume(double temperature, std::span<const double> amounts,
     volume += phi[j] * amounts[j];
     dvolume_dfraction += dphi[j] * amounts[j];
   }
+  // Ammonium: the smaller of acid and ammonia, smoothed.
+  double bound = 0, dbound_dacid = 0, dbound_dammonia = 0, dbound_dw = 0;
+  if (ammonium_ >= 0) {
+    const double acid = hydroxide + h, base = amounts[ammonia_];  // smooth positive part of the H total
+    const double gap = std::sqrt((acid - base) * (acid - base) + width * width);
+    bound = 0.5 * (acid + base - gap);
+    dbound_dacid = 0.5 * (1 - (acid - base) / gap);
+    dbound_dammonia = 0.5 * (1 + (acid - base) / gap);
+    dbound_dw = -0.5 * (width / gap) * 1e-3 * mass_[n];
+    volume += bound * phi[ammonium_];
+    dvolume_dfraction += bound * dphi[ammonium_];
+  }
   if (held) dvolume_dfraction = 0;
   if (!gradient.empty()) {
     for (int j = 0; j < n; ++j)
@@ -145,6 +168,11 @@ double LiquorVolume::volume(double temperature, std::span<const double> amounts,
                     dvolume_dfraction * (mass_[j] * (1 - fraction) + (j == hydrogen_ ? mass_[n] * dhydroxide_dh : 0)) / total;
     gradient[n] = water_volume + (phi[oh] - water_volume) * dhydroxide_dw +
                   dvolume_dfraction * (mass_[n] * dhydroxide_dw - fraction * mass_[n]) / total;
+    if (ammonium_ >= 0) {
+      gradient[hydrogen_] += phi[ammonium_] * dbound_dacid * (1 + dhydroxide_dh);
+      gradient[ammonia_] += phi[ammonium_] * dbound_dammonia;
+      gradient[n] += phi[ammonium_] * (dbound_dacid * dhydroxide_dw + dbound_dw);
+    }
   }
   return volume;
 }

@@ -8,10 +8,12 @@
 namespace leat {
 
 // Volume of a liquor from its composition.
-//   V = (N_w - n_OH) v_w(T) + n_OH phi_OH + sum_j phi_j(W, T) N_j
+//   V = (N_w - n_OH) v_w(T) + n_OH phi_OH + n_NH4 (phi_NH4 - phi_NH3) + sum_j phi_j(W, T) N_j
 // The conventional ionic apparent volumes phi (V(H+) = 0) come from the apparent specific volumes of salts of
 // Laliberte and Cooper, J. Chem. Eng. Data 49 (2004) 1141, at the mass fraction W of all solutes, so that a liquor
-// of one such salt has exactly that correlation's density; n_OH is the smooth negative part of the H total.
+// of one such salt has exactly that correlation's density; n_OH is the smooth negative part of the H total
+// and n_NH4 the smaller of its positive part and the ammonia. Bisulfate and bicarbonate are not told from their ions: up to
+// 3 % at 20 % sulfuric acid.
 // Water: Kell, J. Chem. Eng. Data 20 (1975) 97. Departure: ionic additivity instead of the mixing of salts.
 class LiquorVolume {
  public:
@@ -40,6 +42,7 @@ class LiquorVolume {
   std::vector<double> mass_;         // [kg/mol], water last
   std::vector<std::string> without_volume_;
   int hydrogen_ = -1;
+  int ammonium_ = -1, ammonia_ = -1;  // slot of what ammonia changes when it binds a proton; component
   bool one_kg_water_per_litre_ = false;
 };
 

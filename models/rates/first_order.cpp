@@ -12,8 +12,8 @@ constexpr double linear_below = 1e-9;  // of the reference concentration
 
 class FirstOrder final : public RateLaw {
  public:
-  FirstOrder(std::string name, const LawSettings& settings)
-      : name_(std::move(name)), constant_(settings.values.at("constant")), orders_(settings.orders), has_saturation_(settings.saturation_phase >= 0) {
+  FirstOrder(std::string of_kind, const LawSettings& settings)
+      : name_(std::move(of_kind)), constant_(settings.values.at("constant")), orders_(settings.orders), has_saturation_(settings.saturation_phase >= 0) {
     const auto value = [&](const char* name, double otherwise) {
       const auto found = settings.values.find(name);
       return found == settings.values.end() ? otherwise : found->second;

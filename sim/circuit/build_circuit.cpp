@@ -40,6 +40,7 @@ class CircuitBuilder {
     if (flowsheet_.history) attempt([&] { built.timed = join_circuit(parts, false, diagnostics_); });
     if (!diagnostics_.ok()) return std::nullopt;
     check_metals(*built.steady);
+    check_needs(*built.steady);
     built.metals = flowsheet_.metals;
     if (flowsheet_.history && !flowsheet_.history->from_steady) built.start = fill(*built.timed);
     if (!diagnostics_.ok()) return std::nullopt;
@@ -55,6 +56,20 @@ class CircuitBuilder {
     } catch (const std::exception&) {
       if (diagnostics_.ok()) throw;
     }
+  }
+
+  // A law that consumes what nothing brings will not run: said before it is solved.
+  void check_needs(const Circuit& circuit) {
+    for (std::size_t k = 0; k < plan_.entries.size(); ++k)
+      for (const std::string& needed : plan_.entries[k].needed) {
+        const int j = chemistry_->find_component(needed);
+        bool brought = std::any_of(circuit.ledger_component.begin(), circuit.ledger_component.end(), [&](int component) { return component == j; });
+        for (const CircuitStream& stream : feed_streams_) brought = brought || stream.feed[j] > 0;
+        for (const Lot& lot : context_->lots) brought = brought || lot.products[j] > 0;
+        if (!brought)
+          diagnostics_.caution(Code::no_oxidant, plan_.entries[k].place,
+                               plan_.entries[k].name + " needs " + needed + " to dissolve, and nothing brings it: no stream, mineral or gas");
+      }
   }
 
   void check_metals(const Circuit& circuit) {

@@ -241,7 +241,10 @@ bool LiquorMaker::close_charge(const LiquorSpec& liquor, const Chemistry& chemis
 
 // The ion named balance_with moves until the liquor, electrically neutral, has the typed pH.
 bool LiquorMaker::reach_ph(const LiquorSpec& liquor, const Chemistry& chemistry, double temperature, std::vector<double>& n) {
-  EquilibriumSolver solver(std::shared_ptr<const Chemistry>(&chemistry, [](const Chemistry*) {}));
+  // An analysis is of what is dissolved: its pH is met before any solid may form.
+  auto dissolved = std::make_shared<Chemistry>(chemistry);
+  for (PhaseRow& phase : dissolved->phases) phase.may_form = false;
+  EquilibriumSolver solver(dissolved);
   const std::vector<Reservoir> held = {{"pH", {{chemistry.hydrogen, 1.0}}, 0, -*liquor.ph * std::log(10.0)}};
   for (int turn = 0; turn < 50; ++turn) {
     EquilibriumState state;

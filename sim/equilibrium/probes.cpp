@@ -30,6 +30,10 @@ bool EquilibriumSolver::linearise(std::span<const double> totals, double tempera
 double EquilibriumSolver::probe_value(const Probe& probe, std::span<const double> totals, double temperature,
                                       const EquilibriumState& state) {
   const Chemistry& c = chemistry();
+  const auto floored = [&](int species, double& share) {
+    work_->system.set_totals(totals);
+    work_->floored_component(species, totals, share);
+  };
   const auto volume = [&] {
     std::array<double, most_unknowns> liquid{};
     for (int j = 0; j <= c.component_count(); ++j) liquid[j] = totals[j];
@@ -40,10 +44,14 @@ double EquilibriumSolver::probe_value(const Probe& probe, std::span<const double
       }
     return c.liquor_volume.volume(temperature, {liquid.data(), totals.size()}, {});
   };
-  double sum = 0;
+  double sum = 0, share = 1;
   switch (probe.kind) {
-    case ProbeKind::molality: return state.molality[probe.index];
-    case ProbeKind::concentration: return state.molality[probe.index] * state.solvent / volume();
+    case ProbeKind::molality:
+      floored(probe.index, share);
+      return state.molality[probe.index] * share;
+    case ProbeKind::concentration:
+      floored(probe.index, share);
+      return state.molality[probe.index] * state.solvent / volume() * share;
     case ProbeKind::total:
       if (probe.index == c.hydrogen) {  // signed: its species cancel, what is fed less what has formed does not
         sum = totals[probe.index];
@@ -52,6 +60,8 @@ double EquilibriumSolver::probe_value(const Probe& probe, std::span<const double
             if (share.component == probe.index) sum -= share.coefficient * state.phase_amount[s];
         return sum / volume();
       }
+      work_->system.set_totals(totals);
+      if (work_->system.held_at_floor(probe.index)) return std::max(0.0, totals[probe.index]) / volume();
       // Summed over the species: what is fed less what has formed would be noise over a sparingly soluble solid.
       for (std::size_t i = 0; i < c.species.size(); ++i)
         for (const Share& share : c.species[i].shares)
@@ -117,12 +127,27 @@ double EquilibriumSolver::probe(const Probe& probe, std::span<double> gradient) 
   };
   double value = 0;
   switch (probe.kind) {
-    case ProbeKind::molality:
+    case ProbeKind::molality: {
+      double share = 1;
+      const int floored = w.floored_component(probe.index, w.totals, share);
+      if (floored >= 0) {
+        value = state.molality[probe.index] * share;
+        gradient[floored] += state.molality[probe.index] / (system.total(floored) * scale);
+        return value;
+      }
       value = state.molality[probe.index];
       add_molality(probe.index, 1);
       break;
+    }
     case ProbeKind::concentration: {
       take_volume();
+      double share = 1;
+      const int floored = w.floored_component(probe.index, w.totals, share);
+      if (floored >= 0) {
+        value = state.molality[probe.index] * state.solvent / volume * share;
+        gradient[floored] += state.molality[probe.index] * state.solvent / volume / (system.total(floored) * scale);
+        return value;
+      }
       value = state.molality[probe.index] * state.solvent / volume;
       add_molality(probe.index, state.solvent / volume);
       dx[nc + na] += value;                       // solvent = e^w scale
@@ -140,6 +165,11 @@ double EquilibriumSolver::probe(const Probe& probe, std::span<double> gradient) 
             if (share.component == probe.index && state.phase_amount[s] != 0) add_amount(s, -share.coefficient / volume);
         add_volume(-value / volume);
         break;
+      }
+      if (system.held_at_floor(probe.index)) {
+        value = std::max(0.0, w.totals[probe.index]) / volume;
+        gradient[probe.index] += 1 / volume;
+        return value;
       }
       double sum = 0;
       for (std::size_t i = 0; i < c.species.size(); ++i)

@@ -1,6 +1,7 @@
 #pragma once
 // The inside of EquilibriumSolver, shared by the sources of this room only.
 #include <Eigen/LU>
+#include <algorithm>
 #include <map>
 #include <vector>
 
@@ -60,6 +61,18 @@ struct EquilibriumSolver::Work {
     x.reserve(most_unknowns);
     f.reserve(most_unknowns);
     trial.reserve(most_unknowns);
+  }
+
+  // Of a component held at the floor the equations see a trace that is not there: a species that contains it counts in
+  // proportion to what is. Returns the component, or -1; `share` is what is there over the floor [1].
+  int floored_component(int species, std::span<const double> amounts, double& share) const {
+    for (const Share& one : system.species_shares(species))
+      if (one.coefficient > 0 && system.held_at_floor(one.component)) {
+        share = std::max(0.0, amounts[one.component]) / (system.total(one.component) * system.scale());
+        return one.component;
+      }
+    share = 1;
+    return -1;
   }
 
   int size() const { return system.head() + static_cast<int>(active.size()); }

@@ -89,6 +89,7 @@ void add_recoveries(ResultSet& set, TimeTable& table, const RunResult& result) {
              [](const Snapshot& s) { return s.recovery_by_family; });
   table.list("recovery", "metal in the pregnant liquor over metal fed, rates now", "1", {"element"}, [](const Snapshot& s) { return s.recovery_now; });
   table.list("extraction", "1 - metal leaving undissolved over metal fed, rates now", "1", {"element"}, [](const Snapshot& s) { return s.extraction_now; });
+  table.list("formed_leaving", "metal leaving as solids formed in the circuit over metal fed, rates now", "1", {"element"}, [](const Snapshot& s) { return s.formed_leaving_now; });
   table.list("recovery_by_family_to_date", "recovery by family, integrals since the start", "1", {"element", "family"},
              [](const Snapshot& s) { return s.recovery_by_family_to_date; });
   table.list("recovery_to_date", "recovery, integrals since the start", "1", {"element"}, [](const Snapshot& s) { return s.recovery_to_date; });
@@ -99,6 +100,7 @@ void add_recoveries(ResultSet& set, TimeTable& table, const RunResult& result) {
   set.variables.push_back({"steady_recovery_by_family", "recovery by family at steady state", "1", {"element", "family"}, steady.recovery_by_family});
   set.variables.push_back({"steady_recovery", "recovery at steady state", "1", {"element"}, steady.recovery_now});
   set.variables.push_back({"steady_extraction", "extraction at steady state", "1", {"element"}, steady.extraction_now});
+  set.variables.push_back({"steady_formed_leaving", "metal leaving as formed solids over metal fed at steady state", "1", {"element"}, steady.formed_leaving_now});
 }
 
 void add_units(TimeTable& table) {

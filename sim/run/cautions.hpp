@@ -1,4 +1,6 @@
 #pragma once
+#include <span>
+
 #include "models/chemistry/species_library.hpp"
 #include "sim/run/run_result.hpp"
 
@@ -14,15 +16,21 @@ struct LiquorToWatch {
   double temperature = 298.15;   // [K]
   double ph = 7;
   double ionic_strength = 0;     // [mol/kg]
+  double water_per_volume = 1000;  // solvent in the liquor [kg/m3]
   const std::vector<double>* molality = nullptr;
   const std::vector<double>* dissolved = nullptr;  // per component [mol/m3]
   bool acid_added = false;
+  std::string when = {};         // " at 4 h", or empty
 };
 void watch_liquor(const SpeciesLibrary& library, const Chemistry& chemistry, double pressure, const LiquorToWatch& liquor,
                   std::vector<Caution>& cautions);
 
-// Cautions about constants in use: from memory, beyond zero ionic strength, the user's own.
-void watch_constants(const Chemistry& chemistry, std::vector<Caution>& cautions);
+// Cautions about constants in use: from memory, beyond zero ionic strength, the user's own, without an enthalpy away from
+// where they were measured. temperatures: met in the case [K].
+void watch_constants(const Chemistry& chemistry, std::span<const double> temperatures, std::vector<Caution>& cautions);
+
+// Solids that may not form here although the liquor is supersaturated with them.
+void watch_solids(const Chemistry& chemistry, const std::string& place, std::span<const double> log10_omega, std::vector<Caution>& cautions);
 
 // The sentence every list of safety cautions ends with.
 std::string closing_caution();

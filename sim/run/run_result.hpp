@@ -14,6 +14,7 @@ struct UnitSnapshot {
   double ph = 0, ionic_strength = 0, water_activity = 1;
   double temperature = 0;                 // [K]
   double liquor_density = 0;              // [kg/m3]
+  double water_per_volume = 0;            // solvent in the liquor [kg/m3]
   double pulp_volume = 0;                 // [m3]
   double outlet_flow = 0;                 // [m3/s]
   double solids_fraction = 0;             // [kg/kg]
@@ -32,7 +33,9 @@ struct StreamSnapshot {
   std::vector<double> flow;        // PulpLayout order [mol/s]
   std::vector<double> formed;      // per phase [mol/s]
   std::vector<double> dissolved;   // per component, water last [mol/s]
-  double ph = 0;
+  std::vector<double> molality;    // per species; empty where nothing flows [mol/kg]
+  double ph = 0, ionic_strength = 0;
+  double water_per_volume = 0;     // solvent in the liquor [kg/m3]
   double liquor_volume = 0;        // [m3/s]
   double pulp_volume = 0;          // [m3/s]
   double solids = 0;               // [kg/s]
@@ -56,6 +59,7 @@ struct Snapshot {
   std::vector<StreamSnapshot> streams;          // in the order of the circuit
   std::vector<double> extraction_now, extraction_to_date;  // per recovered element [1]
   std::vector<double> recovery_now, recovery_to_date;      // per recovered element [1]
+  std::vector<double> formed_leaving_now;                  // leaving as formed solids over fed, per recovered element [1]
   std::vector<double> recovery_by_family;       // recovered element x family [1]
   std::vector<double> recovery_by_family_to_date;
   std::vector<double> held_in_vessels;          // recovered element dissolved or formed in vessels [mol]
@@ -64,8 +68,10 @@ struct Snapshot {
 };
 
 struct Caution {
-  std::string kind;   // hcn, ammonia, ...
+  std::string kind;   // hydrogen cyanide, ammonia vapour, ...
+  std::string place;  // vessel, stream or step; empty: the whole case
   std::string text;   // with the number that fired it
+  double weight = 0;  // the larger the worse, among those of one kind
 };
 
 struct RunResult {

@@ -67,6 +67,7 @@ void SnapshotMaker::unit(int vessel, std::span<const double> y, UnitSnapshot& ou
     solids += out.lots[k] * circuit_.context->lots[k].molar_mass;
   }
   out.liquor_density = liquor_mass / liquor;
+  out.water_per_volume = cell.solvent / liquor;
   out.solids_fraction = solids / (solids + liquor_mass);
   // Outlet flow: what leaves over what is held.
   const std::span<const double> leaving = equations_.stream(unit.first_stream);
@@ -103,7 +104,10 @@ bool SnapshotMaker::stream(int index, StreamSnapshot& out) {
     return false;
   }
   out.ph = cell.ph;
+  out.ionic_strength = cell.ionic_strength;
+  out.molality = cell.molality;
   out.liquor_volume = equations_.solver().probe_value({ProbeKind::liquor_volume, 0}, totals, temperature, cell);
+  out.water_per_volume = cell.solvent / out.liquor_volume;
   out.pulp_volume += out.liquor_volume + equations_.solver().probe_value({ProbeKind::formed_volume, 0}, totals, temperature, cell);
   out.solids += equations_.solver().probe_value({ProbeKind::formed_mass, 0}, totals, temperature, cell);
   for (std::size_t s = 0; s < c.phases.size(); ++s) {
@@ -122,6 +126,7 @@ void SnapshotMaker::recoveries(const Crossed* crossed, std::span<const double> y
   out.extraction_to_date.assign(n, std::nan(""));
   out.recovery_to_date.assign(n, std::nan(""));
   out.held_in_vessels.assign(n, 0.0);
+  out.formed_leaving_now.assign(n, std::nan(""));
   families_of_pregnant(out);
   out.recovery_by_family_to_date.assign(n * families, std::nan(""));
   for (std::size_t e = 0; e < n; ++e) {
@@ -129,7 +134,18 @@ void SnapshotMaker::recoveries(const Crossed* crossed, std::span<const double> y
     const double fed = circuit_.fed_solids[element];
     double undissolved = 0;
     for (int s : leaving_) undissolved += circuit_.element_in_lots(element, equations_.stream(s));
+    // Formed solids that leave: of a mineral fed without a law they never dissolved, of others they have come down again.
+    double formed = 0;
+    bool at_equilibrium = false;
+    const Chemistry& c = *circuit_.chemistry;
+    for (std::size_t p = 0; p < c.phases.size(); ++p) {
+      double atoms = 0;
+      for (const Share& share : c.phases[p].shares) atoms += share.coefficient * circuit_.component_elements[share.component][element];
+      at_equilibrium = at_equilibrium || (c.phases[p].at_equilibrium && atoms > 0);
+      for (int s : leaving_) (c.phases[p].at_equilibrium ? undissolved : formed) += atoms * out.streams[s].formed[p];
+    }
     out.extraction_now[e] = 1 - undissolved / fed;
+    out.formed_leaving_now[e] = formed / fed;
     double recovered = 0;
     for (std::size_t f = 0; f < families; ++f) recovered += out.recovery_by_family[e * families + f];
     out.recovery_now[e] = recovered;
@@ -139,7 +155,8 @@ void SnapshotMaker::recoveries(const Crossed* crossed, std::span<const double> y
     double left = 0;
     for (std::size_t l = 0; l < leaving_.size(); ++l)
       left += circuit_.element_in_lots(element, std::span<const double>(crossed->left).subspan(l * layout.size(), layout.size()));
-    out.extraction_to_date[e] = 1 - left / (fed * crossed->time);
+    // Undissolved equilibrium minerals are not among the integrals.
+    if (!at_equilibrium) out.extraction_to_date[e] = 1 - left / (fed * crossed->time);
     double sum = 0;
     for (std::size_t f = 0; f < families; ++f) {
       const double value = crossed->family_to_date[e * families + f] / (fed * crossed->time);

@@ -35,7 +35,7 @@ class Bench {
     for (const StepSpec& step : steps)
       if (!take(step)) break;
     if (!diagnostics_.ok()) return std::nullopt;
-    watch_constants(*chemistry_, result_.cautions);
+    watch_constants(*chemistry_, temperatures_, result_.cautions);
     result_.chemistry = chemistry_;
     return std::move(result_);
   }
@@ -76,7 +76,9 @@ class Bench {
     return compile_chemistry(library_, request, beaker_.chemistry.place, diagnostics_);
   }
 
+  // At the present temperature: a gas follows it.
   void reservoirs() {
+    held_.clear();
     const double ln10 = std::log(10.0);
     if (beaker_.held_ph) held_.push_back({"pH", {{chemistry_->hydrogen, 1.0}}, 0, -*beaker_.held_ph * ln10});
     for (const auto& [name, pressure] : beaker_.gases) {
@@ -133,7 +135,10 @@ class Bench {
     BeakerStep out;
     out.name = step.name;
     bool acid = false;
-    if (step.heat_to) temperature_ = *step.heat_to;
+    if (step.heat_to) {
+      temperature_ = *step.heat_to;
+      reservoirs();
+    }
     for (const NamedAmount& one : step.add) {
       add(one, step.as, 1);
       acid = acid || is_acid(one.name);
@@ -145,7 +150,7 @@ class Bench {
       acid = acid || is_acid(step.with);
       if (!dose_to(step, out)) return false;
     }
-    finish(out, acid);
+    finish(out, acid || (beaker_.held_ph && -state_.phase_amount[chemistry_->phases.size()] > 0));
     return true;
   }
 
@@ -172,7 +177,7 @@ class Bench {
 
   // Doses until the pH is reached: bracket by doubling, then bisection with secant steps (regula falsi, Illinois form).
   bool dose_to(const StepSpec& step, BeakerStep& out) {
-    const double target = *step.until_ph;
+    const double target = *step.until_ph, ph_before = state_.ph;
     const std::vector<double> before = totals_;
     NamedAmount unit{step.with, {}};
     unit.amount.place = step.place;
@@ -188,7 +193,7 @@ class Bench {
     while (at_high * at_low > 0) {
       high *= 2;
       if (high > 100 * before.back() / 55.5) {
-        result_.failure = fmt::format("step '{}': no amount of {} brings the pH to {:.3g} (it is {:.3g} now)", step.name, step.with, target, state_.ph);
+        result_.failure = fmt::format("step '{}': no amount of {} brings the pH to {:.3g}: it is {:.3g} without any", step.name, step.with, target, ph_before);
         return false;
       }
       if (!miss_at(high, at_high)) return false;
@@ -237,7 +242,9 @@ class Bench {
     out.closure = solver_->closure(with_exchange, temperature_, state_);
     std::vector<double> per_volume;
     for (int j = 0; j < c.component_count(); ++j) per_volume.push_back(out.dissolved[j] / out.liquor_volume);
-    watch_liquor(library_, c, 101325, {out.name, temperature_, state_.ph, state_.ionic_strength, &state_.molality, &per_volume, acid}, result_.cautions);
+    watch_liquor(library_, c, 101325, {out.name, temperature_, state_.ph, state_.ionic_strength, state_.solvent / out.liquor_volume, &state_.molality, &per_volume, acid}, result_.cautions);
+    watch_solids(c, out.name, state_.log10_omega, result_.cautions);
+    temperatures_.push_back(temperature_);
     result_.steps.push_back(std::move(out));
   }
 
@@ -253,6 +260,7 @@ class Bench {
   std::vector<double> totals_;
   double temperature_ = 298.15;
   EquilibriumState state_;
+  std::vector<double> temperatures_;  // met so far [K]
   SolveReport report_;
   BeakerResult result_;
 };

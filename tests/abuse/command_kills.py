@@ -19,8 +19,8 @@ import unittest
 import command_support as support
 
 LEAT = support.binary()
-BLOWS = 25      # of each signal
-DAMAGED = 400   # copies of the examples
+BLOWS = 14      # of each signal
+DAMAGED = 150   # copies of the examples
 LONGEST = 10    # of a run of a damaged copy [s]
 SEED = 20814    # any number; the same one always, so that a fault can be met again
 
@@ -46,6 +46,7 @@ class Killed(InEmptyFolder):
         super().setUp()
         text = support.read_text(os.path.join(support.FLOWSHEETS, "1_ammine_residue.yaml"))
         text = re.sub(r"^  every: .*$", "  every: 3 min", text, flags=re.M)
+        text = re.sub(r"^  until: .*$", "  until: 16 h", text, flags=re.M)
         self.write("case.yaml", text.encode())
         start = time.monotonic()
         done = support.run([LEAT, "run", "case.yaml", "--out", "whole.h5"], self.folder, seconds=120)

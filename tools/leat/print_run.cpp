@@ -80,14 +80,15 @@ void recovery_table(const RunResult& result) {
   for (std::size_t f = 0; f < families.size(); ++f)
     for (std::size_t e = 0; e < result.recovered.size(); ++e)
       shown[f] = shown[f] || result.steady.recovery_by_family[e * families.size() + f] > 5e-6;
-  std::vector<TableColumn> columns = {{"metal", ""}, {"fed", "kg/h"}, {"extraction", "%"}, {"recovery", "%"}};
+  std::vector<TableColumn> columns = {{"metal", ""}, {"fed", "kg/h"}, {"extraction", "%"}, {"formed, leaving", "%"}, {"recovery", "%"}};
   for (std::size_t f = 0; f < families.size(); ++f)
     if (shown[f]) columns.push_back({"as " + families[f], "%"});
   TextTableWriter table(columns);
   for (std::size_t e = 0; e < result.recovered.size(); ++e) {
     const int element = result.recovered[e];
     std::vector<TextTableWriter::Cell> row = {circuit.elements[element], circuit.fed_solids[element] * circuit.element_mass[element] * hour,
-                                              percent(result.steady.extraction_now[e]), percent(result.steady.recovery_now[e])};
+                                              percent(result.steady.extraction_now[e]), percent(result.steady.formed_leaving_now[e]),
+                                              percent(result.steady.recovery_now[e])};
     for (std::size_t f = 0; f < families.size(); ++f)
       if (shown[f]) row.push_back(percent(result.steady.recovery_by_family[e * families.size() + f]));
     table.add_row(row);
@@ -165,18 +166,21 @@ void history_table(const RunResult& result) {
 }  // namespace
 
 void print_cautions(const std::vector<Caution>& cautions) {
-  if (cautions.empty()) return;
   heading("Cautions");
-  // One line a kind: the first finding in full, the others counted.
+  // One line a kind: the worst finding in full, the others counted.
   std::vector<std::string> kinds;
   for (const Caution& one : cautions)
     if (std::find(kinds.begin(), kinds.end(), one.kind) == kinds.end()) kinds.push_back(one.kind);
   for (const std::string& kind : kinds) {
-    std::vector<const Caution*> same;
+    const Caution* worst = nullptr;
+    int places = 0;
     for (const Caution& one : cautions)
-      if (one.kind == kind) same.push_back(&one);
-    fmt::print("  {}: {}{}\n", kind, same.front()->text,
-               same.size() > 1 ? fmt::format(" (and {} more places, all in the results file)", same.size() - 1) : "");
+      if (one.kind == kind) {
+        ++places;
+        if (!worst || one.weight > worst->weight) worst = &one;
+      }
+    fmt::print("  {}: {}{}\n", kind, worst->text,
+               places > 1 ? fmt::format(" (the worst of {} places, all in the results file)", places) : "");
   }
   fmt::print("  {}\n", closing_caution());
 }

@@ -42,7 +42,7 @@ void tell_case(const Flowsheet& flowsheet, const BuiltCase& built) {
   fmt::print("\n{}", lots.to_string());
 }
 
-void tell_constants(const Chemistry& c, const SpeciesLibrary& library) {
+void tell_constants(const Chemistry& c, const SpeciesLibrary& library, const std::vector<double>& temperatures) {
   TextTableWriter table({{"constant", ""}, {"log10 K", ""}, {"spread", ""}, {"reaction", ""}, {"evidence", ""}, {"source", ""}});
   for (const UsedConstant& used : c.constants) {
     const auto source = library.sources.find(used.constant.provenance.source);
@@ -51,7 +51,7 @@ void tell_constants(const Chemistry& c, const SpeciesLibrary& library) {
   }
   fmt::print("\nConstants in play\n{}", table.to_string());
   std::vector<Caution> cautions;
-  watch_constants(c, cautions);
+  watch_constants(c, temperatures, cautions);
   print_cautions(cautions);
 }
 
@@ -70,7 +70,9 @@ int check_verb(const std::string& file) {
     const auto result = speciate(*beaker, library, catalogue, diagnostics);
     if (!result || !diagnostics.ok()) return tell_faults(diagnostics, file);
     fmt::print("{}\n\n{} steps, {} species\n", beaker->title, result->steps.size(), result->chemistry->species.size());
-    tell_constants(*result->chemistry, library);
+    std::vector<double> temperatures;
+    for (const BeakerStep& step : result->steps) temperatures.push_back(step.temperature);
+    tell_constants(*result->chemistry, library, temperatures);
     return Exit::done;
   }
   const auto flowsheet = read_flowsheet(text, file, catalogue, diagnostics);
@@ -79,7 +81,9 @@ int check_verb(const std::string& file) {
   if (!built || !diagnostics.ok()) return tell_faults(diagnostics, file);
   tell_cautions(diagnostics);
   tell_case(*flowsheet, *built);
-  tell_constants(*built->steady->chemistry, *built->library);
+  std::vector<double> temperatures;
+  for (const CircuitUnit& unit : built->steady->units) temperatures.push_back(unit.operation->temperature());
+  tell_constants(*built->steady->chemistry, *built->library, temperatures);
   return Exit::done;
 }
 
