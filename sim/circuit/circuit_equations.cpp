@@ -165,6 +165,10 @@ bool CircuitEquations::rates(std::span<const double> y, std::span<double> dydt) 
     const CircuitUnit& unit = c.units[u];
     inlet_of(u, inlet_);
     if (cells_[u].used && dry(inlet_)) {
+      if (inlet_[chem_ - 1] < -1e-6 * 55500 * circuit_->flow_scale) {
+        complaint = unit.name + ": pulp would flow backwards through it";
+        return false;
+      }
       if (std::any_of(inlet_.begin() + chem_, inlet_.end(), [&](double flow) { return flow > circuit_->flow_scale; })) {
         complaint = unit.name + ": solids without liquor reach it";
         return false;

@@ -44,14 +44,14 @@ double EquilibriumSolver::probe_value(const Probe& probe, std::span<const double
       }
     return c.liquor_volume.volume(temperature, {liquid.data(), totals.size()}, {});
   };
-  double sum = 0, share = 1;
+  double sum = 0, present = 1;
   switch (probe.kind) {
     case ProbeKind::molality:
-      floored(probe.index, share);
-      return state.molality[probe.index] * share;
+      floored(probe.index, present);
+      return state.molality[probe.index] * present;
     case ProbeKind::concentration:
-      floored(probe.index, share);
-      return state.molality[probe.index] * state.solvent / volume() * share;
+      floored(probe.index, present);
+      return state.molality[probe.index] * state.solvent / volume() * present;
     case ProbeKind::total:
       if (probe.index == c.hydrogen) {  // signed: its species cancel, what is fed less what has formed does not
         sum = totals[probe.index];

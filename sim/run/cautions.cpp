@@ -180,7 +180,7 @@ void look_at(const SpeciesLibrary& library, const Snapshot& snapshot, bool timed
   for (std::size_t s = 0; s < snapshot.streams.size(); ++s) {
     const StreamSnapshot& stream = snapshot.streams[s];
     const int source = circuit.streams[s].source;
-    if (stream.molality.empty() || (source >= 0 && circuit.units[source].operation->traits().hold_up)) continue;
+    if (stream.molality.empty() || source < 0 || circuit.units[source].operation->traits().hold_up) continue;  // reagents as bought are not told
     std::vector<double> dissolved;
     for (int j = 0; j < chemistry.component_count(); ++j) dissolved.push_back(stream.dissolved[j] / stream.liquor_volume);
     watch_liquor(library, chemistry, result.site_pressure,

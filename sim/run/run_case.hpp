@@ -14,7 +14,7 @@ struct RunOptions {
 
 // Bounds a result must keep to be shown [1].
 struct ClosureBounds {
-  double steady = 1e-8, timed = 1e-6, charge = 1e-9, mass_action = 1e-8, cell_balance = 1e-9;
+  double steady = 1e-8, timed = 1e-7, charge = 1e-9, mass_action = 1e-8, cell_balance = 1e-9;
 };
 
 // Runs a built case: steady from cold, then through time if it has a history. Never throws for a failure to converge or
