@@ -49,6 +49,7 @@ struct KinsolSolver::Parts {
   void* memory = nullptr;
   std::vector<double> check;
   int evaluations = 0, budget = 0;
+  bool constrained = false;
 
   ~Parts() {
     if (memory) KINFree(&memory);
@@ -121,11 +122,11 @@ SolveReport KinsolSolver::solve(std::span<double> x, const KinsolSettings& setti
   fill(p.unknown_scale.get(), unknown_scale, 1);
   fill(p.residual_scale.get(), residual_scale, 1);
   fill(p.x.get(), x, 0);
-  if (positive.empty()) {
-    KINSetConstraints(p.memory, nullptr);
-  } else {
+  // Constraints once set are taken back by zeros: taking them back by a null vector ends the process.
+  if (!positive.empty() || p.constrained) {
     fill(p.positive.get(), positive, 0);
     KINSetConstraints(p.memory, p.positive.get());
+    p.constrained = true;
   }
   KINSetFuncNormTol(p.memory, settings.tolerance);
   KINSetScaledStepTol(p.memory, 1e-16);

@@ -12,6 +12,7 @@ namespace leat {
 namespace {
 
 constexpr int first_sweeps = 2;
+constexpr double close_by = 1e-3;            // scaled residual from which plain Newton steps arrive [1]
 constexpr double transient_turnovers = 30;  // of the whole hold-up, in the fallback
 constexpr double torn_lag = 20;             // a torn stream follows within a second; rings of them within this [s]
 
@@ -142,7 +143,19 @@ SolveReport whole(CircuitEquations& equations, std::vector<double>& y, const Sca
   KinsolSettings settings;
   settings.tolerance = 1e-11;
   settings.most_iterations = 200;
-  return solver.solve(y, settings, scales.unknown, scales.residual, scales.positive);
+  SolveReport report = solver.solve(y, settings, scales.unknown, scales.residual, scales.positive);
+  if (report.ok || !(report.largest_residual < close_by)) return report;
+  // Near the solution a content that is used up (oxygen of a starved tank) lies on its constraint and stops every step:
+  // the last ones are taken without, and looked at afterwards.
+  const std::vector<double> before = y;
+  settings.line_search = false;
+  SolveReport last = solver.solve(y, settings, scales.unknown, scales.residual);
+  last.iterations += report.iterations;
+  for (std::size_t k = 0; k < y.size() && last.ok; ++k)
+    if (scales.positive[k] > 0 && y[k] * scales.unknown[k] < -1e-12) last.ok = false;
+  if (last.ok) return last;
+  y = before;
+  return report;
 }
 
 // The long way: let time pass from where the sweeps ended.

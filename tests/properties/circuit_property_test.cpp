@@ -300,7 +300,7 @@ TEST(CircuitProperty, UnitsInTheFileChangeNothing) {
   for (unsigned seed = 0; seed < plants; ++seed) {
     SCOPED_TRACE(fmt::format("plant {}", seed));
     const RunResult plain = test::run(plant_of(seed).text()), other = test::run(plant_of(seed, Unit::si).text());
-    expect_same(plain, plain.steady, other, other.steady, 1e-12);
+    expect_same(plain, plain.steady, other, other.steady, 1e-11);  // the steady solve stops at 1e-11 of its scales; inputs differ by roundings
     if (HasFailure()) return;
   }
 }

@@ -32,7 +32,7 @@ int run_verb(const RunArguments& arguments) {
   if (terminal && result.timed) fmt::print(stderr, "\n");
   if (!result.steady_ok || (result.timed && !result.time_ok)) {
     fmt::print(stderr, "{}: {}\n", arguments.file, result.failure);
-    return Exit::not_solved;
+    if (!result.timed || !result.time_ok) return Exit::not_solved;  // a history that closes is still worth having
   }
   const std::string out = arguments.out.empty() ? default_output(arguments.file) : arguments.out;
   const ResultSet set = layout_of(result, *built->library, {base_name(arguments.file), text, flowsheet->title, program_name()});
@@ -43,7 +43,7 @@ int run_verb(const RunArguments& arguments) {
   }
   print_run(result);
   fmt::print("\nWritten to {} (HDF5, also netCDF-4; variables in outputs/README.md)\n", out);
-  return Exit::done;
+  return result.steady_ok ? Exit::done : Exit::not_solved;
 }
 
 }  // namespace leat
