@@ -261,7 +261,8 @@ EquilibriumSolver::Closure EquilibriumSolver::closure(std::span<const double> to
     worst.mass_action = std::max(worst.mass_action, std::abs(ln_iap - ln10 * c.log10_k(c.phases[s], temperature)));
   }
   for (int j = 0; j <= nc; ++j) {
-    const double floor = 1e-14 * solvent * 2;
+    // What is held at the floor, and the little below zero that an integrator may leave of a component used up.
+    const double floor = 1e-14 * solvent * 2 + (j != c.hydrogen ? std::clamp(-totals[j], 0.0, 1e-9 * solvent) : 0.0);
     worst.balance = std::max(worst.balance, std::max(0.0, std::abs(sum[j] - totals[j]) - floor) /
                                                 std::max({size[j], std::abs(totals[j]), 1e-30}));
   }

@@ -149,9 +149,10 @@ RunResult run_case(const Flowsheet& flowsheet, const BuiltCase& built, const Run
   if (built.timed && (result.steady_ok || !from_steady)) {
     result.timed = true;
     const std::string before = result.failure;
+    result.failure.clear();
     std::vector<double> start = from_steady ? steady_start(*built.steady, *built.timed, steady) : built.start;
     result.time_ok = run_timed(*flowsheet.history, built.timed, std::move(start), options, result);
-    if (!before.empty()) result.failure = before;
+    if (!before.empty()) result.failure = result.time_ok ? before : before + "; through time: " + result.failure;
   }
   find_cautions(*built.library, result);
   return result;
