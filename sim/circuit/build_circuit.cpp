@@ -10,6 +10,7 @@
 #include "models/core/nearest.hpp"
 #include "sim/circuit/circuit_joiner.hpp"
 #include "sim/circuit/feed_maker.hpp"
+#include "sim/circuit/chemistry_request.hpp"
 #include "sim/circuit/library_overrides.hpp"
 
 namespace leat {
@@ -93,17 +94,7 @@ class CircuitBuilder {
       for (const FillingSpec& filling : flowsheet_.history->fillings) maker_.collect(filling.liquor, components);
     for (const UnitSpec& unit : flowsheet_.units)
       if (unit.gas) components.insert("O2");
-    ChemistryRequest request;
-    request.components.assign(components.begin(), components.end());
-    request.families = flowsheet_.chemistry.families;
-    request.places = flowsheet_.chemistry.places;
-    request.may_form = flowsheet_.chemistry.may_form;
-    request.may_form_given = flowsheet_.chemistry.may_form_given;
-    request.forms_slowly = flowsheet_.chemistry.forms_slowly;
-    request.only = flowsheet_.chemistry.only;
-    request.one_kg_water_per_litre = flowsheet_.chemistry.one_kg_water_per_litre;
-    request.fixed_debye_huckel_a = flowsheet_.chemistry.debye_huckel_a;
-    request.activity = catalogue_.activity.at(flowsheet_.chemistry.activity)();
+    ChemistryRequest request = request_of(flowsheet_.chemistry, components, catalogue_);
     request.at_equilibrium = plan_.at_equilibrium;
     for (const LotPlan::Entry& entry : plan_.entries) request.minerals.push_back(entry.mineral);
     return compile_chemistry(library_, request, flowsheet_.chemistry.place, diagnostics_);

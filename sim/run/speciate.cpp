@@ -5,6 +5,7 @@
 #include <algorithm>
 #include <cmath>
 
+#include "sim/circuit/chemistry_request.hpp"
 #include "sim/circuit/library_overrides.hpp"
 #include "sim/circuit/liquor_maker.hpp"
 #include "sim/run/cautions.hpp"
@@ -51,17 +52,7 @@ class Bench {
       if (!step.with.empty()) maker_.collect(step.with, step.place, components);
     }
     for (const auto& [name, pressure] : beaker_.gases) maker_.collect(name, pressure.second, components);
-    ChemistryRequest request;
-    request.components.assign(components.begin(), components.end());
-    request.families = beaker_.chemistry.families;
-    request.places = beaker_.chemistry.places;
-    request.may_form = beaker_.chemistry.may_form;
-    request.may_form_given = beaker_.chemistry.may_form_given;
-    request.forms_slowly = beaker_.chemistry.forms_slowly;
-    request.only = beaker_.chemistry.only;
-    request.one_kg_water_per_litre = beaker_.chemistry.one_kg_water_per_litre;
-    request.fixed_debye_huckel_a = beaker_.chemistry.debye_huckel_a;
-    request.activity = catalogue_.activity.at(beaker_.chemistry.activity)();
+    ChemistryRequest request = request_of(beaker_.chemistry, components, catalogue_);
     // A solid put into the beaker takes part in the equilibrium.
     const auto put_in = [&](const std::vector<NamedAmount>& list) {
       for (const NamedAmount& one : list) {

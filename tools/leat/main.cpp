@@ -18,7 +18,7 @@ int main(int argc, char** argv) {
   CLI::App* check = app.add_subcommand("check", "read and validate a file, say what would be solved, solve nothing");
   check->add_option("file", arguments.file, "flowsheet or beaker")->required();
   CLI::App* run = app.add_subcommand("run", "solve a circuit at steady state and, with a history, through time");
-  run->add_option("file", arguments.file, "flowsheet")->required();
+  run->add_option("file", arguments.file, "flowsheet (a beaker is solved as by speciate)")->required();
   run->add_option("--out", arguments.out, "results file; default outputs/NAME.h5");
   CLI::App* speciate = app.add_subcommand("speciate", "solve one beaker of liquor, step by step");
   speciate->add_option("file", arguments.file, "beaker")->required();

@@ -18,7 +18,7 @@ int run_verb(const RunArguments& arguments) {
   const SpeciesLibrary library = load_library();
   const Catalogue catalogue = register_models();
   const std::string kind = file_kind(text, arguments.file, diagnostics);
-  if (kind == "beaker") return speciate_verb(arguments);
+  if (kind == "beaker") return speciate_verb(arguments);  // the file says what it is
   const auto flowsheet = read_flowsheet(text, arguments.file, catalogue, diagnostics);
   if (!flowsheet) return tell_faults(diagnostics, arguments.file);
   const auto built = build_circuit(*flowsheet, library, catalogue, diagnostics);
