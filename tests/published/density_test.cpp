@@ -72,6 +72,7 @@ const PublishedSalt published[] = {
     {"NaOH", {385.55, 753.47, -0.10938, 0.0006953, 542.88}, 0.40},
     {"NH3", {0.12693, 0.1047, 1.0302, -0.0050803, -2973.7}, 0.294},
     {"HCl", {-80.061, 255.42, 118.42, 1.0164, 2619.5}, 0.40},
+    {"NH4Cl", {6.5615, 89.772, 4.9024, -0.016574, -2089.3}, 0.25},  // ammonia that binds a proton
 };
 
 // A liquor of one salt has the density of the correlation. Tolerance 2e-5: the smooth switch between acid and hydroxide counts
@@ -88,6 +89,12 @@ void expect_the_correlation(bool hydroxide) {
 }
 
 TEST(laliberte_cooper_2004, one_salt_has_the_density_of_the_correlation) { expect_the_correlation(false); }
+// A salt whose ions take their volumes from other salts: ammonium sulfate, from NH4Cl and Na2SO4. Tolerance 1 %: ionic additivity.
+TEST(laliberte_cooper_2004, ammonium_sulfate_follows_from_its_ions) {
+  const double c[5] = {-123.22, 452.59, 3.2898, 0.016292, 1692.4};
+  for (double fraction : {0.05, 0.10, 0.20}) EXPECT_RELATIVE(density(20, {{"(NH4)2SO4", fraction}}, 1 - fraction), laliberte_cooper(20, fraction, c), 0.01) << fraction;
+}
+
 TEST(laliberte_cooper_2004, sodium_hydroxide_has_the_density_of_the_correlation) { expect_the_correlation(true); }
 
 // Handbook table of sodium chloride at 20 degC, figures from memory; 24 percent is 283 g/L, a leach brine. Tolerance 1 kg/m3: the
