@@ -12,7 +12,7 @@
 namespace leat {
 namespace {
 
-constexpr double oxygen_in_air = 0.209476;  // dry air, by volume; U.S. Standard Atmosphere 1976 [1]
+constexpr double oxygen_in_air = 0.209476;  // dry air, by volume; U.S. Standard Atmosphere 1976, from memory [1]
 constexpr double least_scale = 1e-6;        // share of the water's content a scale may not go under
 
 class Joiner {

@@ -8,6 +8,8 @@
 namespace leat {
 namespace {
 
+constexpr double assigned_density = 4000;  // of a solid that the user adds; common practice, no source [kg/m3]
+
 // The reaction balances in elements and charge?
 bool balances(const std::vector<ReactionTerm>& terms, std::string& fault) {
   Formula sum;
@@ -44,7 +46,7 @@ EquilibriumConstant user_constant(const OverrideSpec& spec, const EquilibriumCon
 }
 
 // A new species or solid, made by its reaction.
-bool add_new(SpeciesLibrary& library, const OverrideSpec& spec, std::string& fault) {
+bool add_new(SpeciesLibrary& library, const OverrideSpec& spec, Diagnostics& diagnostics, std::string& fault) {
   const auto terms = parse_reaction(spec.reaction, fault);
   if (!terms || !balances(*terms, fault)) return false;
   double makes = 0;
@@ -62,7 +64,8 @@ bool add_new(SpeciesLibrary& library, const OverrideSpec& spec, std::string& fau
     solid.formula = *formula;
     solid.reaction = *terms;
     solid.constant = user_constant(spec, {});
-    solid.density = 4000;
+    solid.density = assigned_density;
+    diagnostics.caution(Code::bad_data, spec.place, spec.name + " is a solid of your own: its density is taken as 4 g/cm3");
     solid.density_provenance = {"assigned", "", "common practice, no source", "", true};
     solid.place = spec.place;
     library.solids.push_back(solid);
@@ -130,7 +133,7 @@ SpeciesLibrary with_overrides(const SpeciesLibrary& original, const ChemistrySpe
     } else if (spec.reaction.empty()) {
       diagnostics.fault(Code::unknown_name, spec.place,
                         "'" + spec.name + "' is not in the library" + did_you_mean(spec.name, names) + "; a new one needs a reaction");
-    } else if (!add_new(library, spec, fault)) {
+    } else if (!add_new(library, spec, diagnostics, fault)) {
       diagnostics.fault(Code::bad_data, spec.place, fault);
     }
   }

@@ -94,6 +94,7 @@ int speciate_verb(const RunArguments& arguments) {
   if (!beaker || !diagnostics.ok()) return tell_faults(diagnostics, arguments.file);
   const auto result = speciate(*beaker, library, catalogue, diagnostics);
   if (!result || !diagnostics.ok()) return tell_faults(diagnostics, arguments.file);
+  tell_cautions(diagnostics);
   if (!result->failure.empty()) {
     fmt::print(stderr, "{}: {}\n", arguments.file, result->failure);
     return Exit::not_solved;
