@@ -37,7 +37,7 @@ LIBRARIES = [
     ("yaml-cpp", r"yaml-cpp/", "sim/input"),
     ("HDF5", r"hdf5(_hl)?\.h|H5\w*\.h", "sim/results"),
     ("CLI11", r"CLI/", "tools/leat"), ("spdlog", r"spdlog/", "tools/leat"),
-    ("SQLite", r"sqlite3\.h", "sim/study"), ("NLopt", r"nlopt\.h(pp)?", "sim/study"), ("GSL", r"gsl/", "sim/study"),
+    ("SQLite", r"sqlite3\.h", "sim/study"), ("xxHash", r"xxhash\.h", "sim/study"), ("NLopt", r"nlopt\.h(pp)?", "sim/study"), ("GSL", r"gsl/", "sim/study"),
     ("JSON", r"nlohmann/", "sim/results"), ("xlsxwriter", r"xlsxwriter\.h", "sim/results"),
 ]
 SYSTEM = r"[a-z_0-9]+|(assert|ctype|errno|fcntl|fenv|float|inttypes|limits|locale|math|poll|pthread|pwd|setjmp|signal|stdarg|stddef|stdint|" \

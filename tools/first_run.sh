@@ -9,4 +9,5 @@ cmake --build --preset release --target leat
 build/release/tools/leat run flowsheets/1_ammine_residue.yaml
 echo
 echo "Look at:   outputs/1_ammine_residue.h5   (ncdump -h, h5py or xarray; outputs/README.md names every variable)"
+echo "As a page: build/release/tools/leat report outputs/1_ammine_residue.h5"
 echo "Next:      build/release/tools/leat check flowsheets/2_cyano_ore.yaml"

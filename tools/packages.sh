@@ -15,6 +15,9 @@ need() {
   $as_root env DEBIAN_FRONTEND=noninteractive apt-get install -y -q --no-install-recommends $missing
 }
 build_packages="g++ cmake ninja-build pkg-config ccache libsundials-dev libsuitesparse-dev libeigen3-dev libyaml-cpp-dev
-  libhdf5-dev libudunits2-dev libfmt-dev libcli11-dev"
+  libhdf5-dev libudunits2-dev libfmt-dev libcli11-dev nlohmann-json3-dev libsqlite3-dev libxxhash-dev"
 test_packages="libgtest-dev libbenchmark-dev netcdf-bin hdf5-tools python3 python3-yaml python3-numpy python3-xarray python3-netcdf4
   python3-h5py"
+# Scripts of the page and the browser that tests it, unless other packages brought them.
+command -v npm >/dev/null || build_packages="$build_packages nodejs npm"
+command -v chromium >/dev/null || test_packages="$test_packages chromium"

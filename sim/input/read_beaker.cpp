@@ -23,8 +23,8 @@ class BeakerReader : public KeyReader {
     static const std::vector<std::string> keys = {"leat", "kind", "title", "chemistry", "beaker", "steps"};
     beaker.place = root.place;
     if (!typed_.is_map(root)) return;
+    if (!head(root, "beaker", beaker.title)) return;
     typed_.only_keys(root, keys);
-    head(root, "beaker", beaker.title);
     if (const YamlNode* map = root.find("chemistry")) beaker.chemistry = chemistry(*map);
     if (const YamlNode* map = typed_.required(root, "beaker")) contents(*map, beaker);
     const YamlNode* list = root.find("steps");

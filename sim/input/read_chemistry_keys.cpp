@@ -6,6 +6,7 @@
 #include <stdexcept>
 
 #include "models/core/nearest.hpp"
+#include "sim/input/file_kinds.hpp"
 
 namespace leat {
 namespace {
@@ -71,14 +72,19 @@ void KeyReader::text_at(const YamlNode& map, std::string_view key, std::string& 
   if (const YamlNode* node = map.find(key)) value = typed_.text(*node).value_or("");
 }
 
-void KeyReader::head(const YamlNode& root, const std::string& kind, std::string& title) {
+bool KeyReader::head(const YamlNode& root, const std::string& kind, std::string& title) {
   if (const YamlNode* node = typed_.required(root, "leat")) typed_.whole_number(*node, 1, 1);
+  bool other = false;
   if (const YamlNode* node = typed_.required(root, "kind")) {
     const auto word = typed_.text(*node);
+    const auto& kinds = file_kinds();
+    other = word && *word != kind && std::find(kinds.begin(), kinds.end(), *word) != kinds.end();
     if (word && *word != kind)
-      fault(Code::unknown_name, node->place, fmt::format("the file is of kind {}; {} is needed here", in_quotes(*word), kind));
+      fault(Code::unknown_name, node->place, fmt::format("the file is of kind {}; {} is needed here{}", in_quotes(*word), kind,
+                                                         other ? ". Use " + verb_for(*word) : did_you_mean(*word, kinds)));
   }
   text_at(root, "title", title);
+  return !other;
 }
 
 std::optional<double> KeyReader::temperature(const YamlNode& node) { return typed_.quantity(node, "K", coldest, hottest); }

@@ -34,8 +34,8 @@ class KeyReader {
  public:
   KeyReader(const Catalogue& catalogue, Diagnostics& diagnostics) : catalogue_(catalogue), diagnostics_(diagnostics), typed_(diagnostics) {}
 
-  // `leat`, `kind` and `title` of a file of one kind.
-  void head(const YamlNode& root, const std::string& kind, std::string& title);
+  // `leat`, `kind` and `title` of a file of one kind. False, with one fault, if it is of another: then its keys mean nothing here.
+  bool head(const YamlNode& root, const std::string& kind, std::string& title);
 
   ChemistrySpec chemistry(const YamlNode& map);
   LiquorSpec liquor(const YamlNode& node);

@@ -2,6 +2,7 @@
 
 #include <fmt/format.h>
 
+#include "sim/input/file_kinds.hpp"
 #include "sim/input/read_flowsheet_parts.hpp"
 
 namespace leat {
@@ -18,8 +19,8 @@ void FlowsheetReader::read(const YamlNode& root, Flowsheet& flowsheet) {
   flowsheet_ = &flowsheet;
   flowsheet.place = root.place;
   if (!typed_.is_map(root)) return;
+  if (!head(root, "flowsheet", flowsheet.title)) return;
   typed_.only_keys(root, keys);
-  head(root, "flowsheet", flowsheet.title);
   liquor_names_ = keys_of(root.find("liquors"));
   solids_names_ = keys_of(root.find("solids"));
   reagent_names_ = keys_of(root.find("reagents"));
@@ -106,14 +107,13 @@ std::optional<Flowsheet> read_flowsheet(std::string_view text, const std::string
 }
 
 std::string file_kind(std::string_view text, const std::string& file, Diagnostics& diagnostics) {
-  static const std::vector<std::string> kinds = {"flowsheet", "beaker"};
   const std::optional<YamlNode> root = read_yaml(text, file, diagnostics);
   TypedReader typed(diagnostics);
   if (!root || !typed.is_map(*root)) return "";
   const YamlNode* version = typed.required(*root, "leat");
   const YamlNode* kind = typed.required(*root, "kind");
   const bool readable = version && typed.whole_number(*version, 1, 1);
-  const auto word = kind ? typed.choice(*kind, kinds) : std::nullopt;
+  const auto word = kind ? typed.choice(*kind, file_kinds()) : std::nullopt;
   return readable && word ? *word : "";
 }
 

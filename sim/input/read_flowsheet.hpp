@@ -16,7 +16,7 @@ namespace leat {
 // What was read, or nothing if the text is no YAML. With a fault in `diagnostics` it must not be used.
 std::optional<Flowsheet> read_flowsheet(std::string_view text, const std::string& file, const Catalogue& catalogue, Diagnostics& diagnostics);
 
-// What a file says it is: "flowsheet" or "beaker"; "" with a fault if it says neither.
+// What a file says it is: "flowsheet", "beaker", "ladder" or "campaign"; "" with a fault if it says none of them.
 std::string file_kind(std::string_view text, const std::string& file, Diagnostics& diagnostics);
 
 }  // namespace leat

@@ -3,6 +3,8 @@
 #include <algorithm>
 #include <array>
 #include <cmath>
+#include <deque>
+#include <iterator>
 #include <set>
 
 #include "sim/input/typed_reader.hpp"
@@ -20,7 +22,7 @@ class LibraryReader {
   SpeciesLibrary read(std::span<const std::pair<std::string_view, std::string_view>> files) {
     const auto each = [&](std::string_view top, auto&& take) {
       for (const auto& [name, text] : files) {
-        const std::optional<YamlNode> node = document(name, text);
+        const YamlNode* node = document(name, text);
         if (!node) continue;
         const YamlNode* list = node->find(top);
         if (!list) continue;
@@ -43,7 +45,7 @@ class LibraryReader {
     each("debye_huckel", [&](const std::string&, const YamlNode& node) { debye_huckel(node); });
     each("air_limits", [&](const std::string&, const YamlNode& node) { air_limit(node); });
     for (const auto& [name, text] : files)
-      if (const std::optional<YamlNode> node = document(name, text))
+      if (const YamlNode* node = document(name, text))
         if (const YamlNode* vapour = node->find("water_vapour")) {
           provenance(*vapour);
           const std::array<std::string, 3> keys = {"a", "b", "c"};
@@ -57,12 +59,14 @@ class LibraryReader {
   }
 
  private:
-  std::optional<YamlNode> document(std::string_view name, std::string_view text) {
-    for (const auto& [known, node] : parsed_)
-      if (known == name) return node;
-    std::optional<YamlNode> node = read_yaml(text, "models/data/" + std::string(name), diagnostics_);
-    parsed_.emplace_back(std::string(name), node);
-    return node;
+  // Each file is parsed once, and its nodes are lent, not copied; null if it cannot be read.
+  const YamlNode* document(std::string_view name, std::string_view text) {
+    auto found = std::find_if(parsed_.begin(), parsed_.end(), [&](const auto& one) { return one.first == name; });
+    if (found == parsed_.end()) {
+      parsed_.emplace_back(std::string(name), read_yaml(text, "models/data/" + std::string(name), diagnostics_));
+      found = std::prev(parsed_.end());
+    }
+    return found->second ? &*found->second : nullptr;
   }
 
   std::string text_of(const YamlNode& node, std::string_view key, bool needed = true) {
@@ -267,7 +271,7 @@ class LibraryReader {
   Diagnostics& diagnostics_;
   TypedReader read_;
   SpeciesLibrary library_;
-  std::vector<std::pair<std::string, std::optional<YamlNode>>> parsed_;
+  std::deque<std::pair<std::string, std::optional<YamlNode>>> parsed_;  // stays where it is while it grows
   std::set<std::string> names_;
 };
 

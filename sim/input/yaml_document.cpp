@@ -11,6 +11,7 @@
 #include <filesystem>
 #include <fstream>
 #include <istream>
+#include <iterator>
 #include <streambuf>
 #include <unordered_set>
 #include <utility>
@@ -86,8 +87,8 @@ class NodeBuilder : public YAML::EventHandler {
 
   // The path of the key read last, for faults of the parser.
   std::string last_path() const {
-    const bool between = wants_key() && !frames_.back().node.entries.empty();
-    return between ? frames_.back().node.entries.back().key_place.key : value_path();
+    const bool between = wants_key() && entries_.size() > frames_.back().first;
+    return between ? entries_.back().key_place.key : value_path();
   }
   int last_quote_line() const { return last_quote_line_; }  // line of the last quoted scalar if it spans lines, else 0
 
@@ -155,12 +156,14 @@ class NodeBuilder : public YAML::EventHandler {
   void OnMapEnd() override { close(); }
 
  private:
-  // A list or map that is still open.
+  // A list or map that is still open. What it holds so far stands at the end of items_ or entries_, from `first` on: growing one
+  // long vector costs less than growing one for each map.
   struct Frame {
     YamlNode node;
+    std::size_t first = 0;
     std::optional<std::string> key;  // of a map: read, its value not yet
     Place key_place;
-    std::unordered_set<std::string> keys;
+    std::unordered_set<std::string> keys;  // of a long map; a short one is looked through
     bool in_brackets = false;  // written with [ ] or { }, or inside such
   };
 
@@ -173,7 +176,7 @@ class NodeBuilder : public YAML::EventHandler {
   std::string value_path() const {
     if (frames_.empty()) return "";
     const Frame& frame = frames_.back();
-    if (frame.node.is_list()) return frame.node.place.key + "[" + std::to_string(frame.node.items.size()) + "]";
+    if (frame.node.is_list()) return frame.node.place.key + "[" + std::to_string(items_.size() - frame.first) + "]";
     return frame.key ? frame.key_place.key : frame.node.place.key;
   }
 
@@ -224,13 +227,26 @@ class NodeBuilder : public YAML::EventHandler {
     const Place place = finder_.place(mark, parent.empty() ? key : parent + "." + key);
     if (key.empty()) diagnostics_.fault(Code::bad_yaml, place, "an empty key; write a word before the colon");
     if (key == "<<") diagnostics_.fault(Code::bad_yaml, place, "a merge ('<<') is not read; write the keys out");
-    if (!frame.keys.insert(key).second) {
-      const auto first = std::find_if(frame.node.entries.begin(), frame.node.entries.end(), [&](const auto& entry) { return entry.key == key; });
-      const int line = first == frame.node.entries.end() ? 0 : first->key_place.line;
+    if (is_doubled(frame, key)) {
+      const auto first = find_key(frame, key);
+      const int line = first == entries_.end() ? 0 : first->key_place.line;
       diagnostics_.fault(Code::duplicate, place, "'" + key + "' is given twice; it stands already in line " + std::to_string(line));
     }
     frame.key = key;
     frame.key_place = place;
+  }
+
+  std::vector<YamlNode::Entry>::const_iterator find_key(const Frame& frame, const std::string& key) const {
+    return std::find_if(entries_.begin() + static_cast<std::ptrdiff_t>(frame.first), entries_.end(), [&](const auto& entry) { return entry.key == key; });
+  }
+
+  bool is_doubled(Frame& frame, const std::string& key) const {
+    constexpr std::size_t short_map = 16;  // keys [1]
+    const std::size_t known = entries_.size() - frame.first;
+    if (known < short_map) return find_key(frame, key) != entries_.end();
+    if (frame.keys.empty())
+      for (std::size_t k = frame.first; k < entries_.size(); ++k) frame.keys.insert(entries_[k].key);
+    return !frame.keys.insert(key).second;
   }
 
   void open(const YAML::Mark& mark, const std::string& tag, YAML::anchor_t anchor, YamlNode::Kind kind,
@@ -249,6 +265,7 @@ class NodeBuilder : public YAML::EventHandler {
     Frame frame;
     frame.in_brackets = style == YAML::EmitterStyle::Flow || (!frames_.empty() && frames_.back().in_brackets);
     frame.node.kind = kind;
+    frame.first = kind == YamlNode::Kind::list ? items_.size() : entries_.size();
     frame.node.place = finder_.place(mark, value_path());
     frames_.push_back(std::move(frame));
   }
@@ -256,7 +273,10 @@ class NodeBuilder : public YAML::EventHandler {
   void close() {
     last_quote_line_ = 0;
     YamlNode node = std::move(frames_.back().node);
+    const std::size_t first = frames_.back().first;
     frames_.pop_back();
+    if (node.is_list()) take_from(items_, first, node.items);
+    else take_from(entries_, first, node.entries);
     add(std::move(node));
   }
 
@@ -267,16 +287,25 @@ class NodeBuilder : public YAML::EventHandler {
     }
     Frame& frame = frames_.back();
     if (frame.node.is_list()) {
-      frame.node.items.push_back(std::move(node));
+      items_.push_back(std::move(node));
     } else {
-      frame.node.entries.push_back({std::move(*frame.key), std::move(frame.key_place), std::move(node)});
+      entries_.push_back({std::move(*frame.key), std::move(frame.key_place), std::move(node)});
       frame.key.reset();
     }
+  }
+
+  template <class One>
+  static void take_from(std::vector<One>& all, std::size_t first, std::vector<One>& own) {
+    const auto begin = all.begin() + static_cast<std::ptrdiff_t>(first);
+    own.assign(std::make_move_iterator(begin), std::make_move_iterator(all.end()));
+    all.erase(begin, all.end());
   }
 
   PlaceFinder& finder_;
   Diagnostics& diagnostics_;
   std::vector<Frame> frames_;
+  std::vector<YamlNode> items_;           // of the open lists
+  std::vector<YamlNode::Entry> entries_;  // of the open maps
   std::optional<YamlNode> root_;
   int last_quote_line_ = 0;
 };

@@ -11,18 +11,22 @@ namespace {
 
 using Rows = std::vector<const Snapshot*>;
 
-// Collects one variable over the stored times.
+// Collects variables over the stored times and, where there is a steady state, a twin of each at rest, steady_NAME.
 class TimeTable {
  public:
-  TimeTable(ResultSet& set, const Rows& rows) : set_(set), rows_(rows) {}
+  TimeTable(ResultSet& set, const Rows& rows, const Snapshot* steady) : set_(set), rows_(rows), steady_(steady) {}
 
   void per_time(const char* name, const char* meaning, const char* units, const std::function<double(const Snapshot&)>& value) {
-    Variable variable{name, meaning, units, {"time"}, {}};
-    for (const Snapshot* row : rows_) variable.values.push_back(value(*row));
-    set_.variables.push_back(std::move(variable));
+    list(name, meaning, units, {}, [&](const Snapshot& row) { return std::vector<double>{value(row)}; });
   }
   void list(const char* name, const char* meaning, const char* units, std::vector<std::string> axes,
             const std::function<std::vector<double>(const Snapshot&)>& values) {
+    if (steady_) twins_.push_back({std::string("steady_") + name, std::string(meaning) + ", at steady state", units, axes, values(*steady_)});
+    list_history(name, meaning, units, std::move(axes), values);
+  }
+  // The same for what only a history has: integrals and holdings.
+  void list_history(const char* name, const char* meaning, const char* units, std::vector<std::string> axes,
+                    const std::function<std::vector<double>(const Snapshot&)>& values) {
     axes.insert(axes.begin(), "time");
     Variable variable{name, meaning, units, axes, {}};
     for (const Snapshot* row : rows_) {
@@ -31,6 +35,7 @@ class TimeTable {
     }
     set_.variables.push_back(std::move(variable));
   }
+  void add_twins() { set_.variables.insert(set_.variables.end(), twins_.begin(), twins_.end()); }
   void unit(const char* name, const char* meaning, const char* units, const std::function<double(const UnitSnapshot&)>& value) {
     list(name, meaning, units, {"unit"}, [&](const Snapshot& row) {
       std::vector<double> out;
@@ -67,6 +72,8 @@ class TimeTable {
  private:
   ResultSet& set_;
   const Rows& rows_;
+  const Snapshot* steady_;  // null where none was found
+  std::vector<Variable> twins_;
 };
 
 void add_axes(ResultSet& set, const RunResult& result, const Rows& rows) {
@@ -78,29 +85,52 @@ void add_axes(ResultSet& set, const RunResult& result, const Rows& rows) {
   for (const CircuitStream& one : circuit.streams) stream.labels.push_back(one.name);
   Axis element{"element", "metal fed with the solids", "", {}, {}, false};
   for (int e : result.recovered) element.labels.push_back(circuit.elements[e]);
+  Axis operation{"operation", "unit of the circuit, those without hold-up too", "", {}, {}, false};
+  TextTable kind{"operation_kind", "kind of a unit", "operation", {}};
+  for (const CircuitUnit& one : circuit.units)
+    if (!one.torn) {
+      operation.labels.push_back(one.name);
+      kind.values.push_back(one.kind);
+    }
   Axis lot{"lot", "fed mineral, or a part of one", "", {}, {}, false};
   for (const Lot& one : circuit.context->lots) lot.labels.push_back(one.name);
-  set.axes.insert(set.axes.end(), {time, unit, stream, element, lot});
+  set.axes.insert(set.axes.end(), {time, unit, operation, stream, element, lot});
+  set.texts.push_back(kind);
 }
 
-// `timed`: the snapshots' stream list may differ from the steady circuit's where a loop was torn there.
-void add_recoveries(ResultSet& set, TimeTable& table, const RunResult& result) {
+// Where each stream comes from and goes to, and what is fed: enough to draw the circuit and to weigh its metals.
+void add_circuit(ResultSet& set, const RunResult& result) {
+  const Circuit& circuit = *result.circuit;
+  TextTable from{"stream_from", "unit a stream comes out of; empty where it is fed", "stream", {}};
+  TextTable to{"stream_to", "unit that takes a stream; empty where it leaves", "stream", {}};
+  TextTable leaves{"stream_leaves_as", "name under which a stream leaves", "stream", {}};
+  const auto name = [&](int unit) { return unit >= 0 && !circuit.units[unit].torn ? circuit.units[unit].name : std::string(); };
+  for (const CircuitStream& stream : circuit.streams) {
+    from.values.push_back(name(stream.source));
+    to.values.push_back(name(stream.taker));
+    leaves.values.push_back(stream.leaves_as);
+  }
+  set.texts.insert(set.texts.end(), {from, to, leaves});
+  Variable mass{"element_mass", "molar mass", "kg mol-1", {"element"}, {}}, fed{"fed", "metal fed with the solids", "kg s-1", {"element"}, {}};
+  for (int e : result.recovered) {
+    mass.values.push_back(circuit.element_mass[e]);
+    fed.values.push_back(circuit.fed_solids[e] * circuit.element_mass[e]);
+  }
+  set.variables.insert(set.variables.end(), {mass, fed});
+  set.variables.push_back({"dry_solids", "dry solids fed", "kg s-1", {}, {circuit.dry_solids}});
+}
+
+void add_recoveries(TimeTable& table) {
   table.list("recovery_by_family", "recovery into the pregnant liquor by family of complexes, rates now", "1", {"element", "family"},
              [](const Snapshot& s) { return s.recovery_by_family; });
   table.list("recovery", "metal in the pregnant liquor over metal fed, rates now", "1", {"element"}, [](const Snapshot& s) { return s.recovery_now; });
   table.list("extraction", "1 - metal leaving undissolved over metal fed, rates now", "1", {"element"}, [](const Snapshot& s) { return s.extraction_now; });
   table.list("formed_leaving", "metal leaving as solids formed in the circuit over metal fed, rates now", "1", {"element"}, [](const Snapshot& s) { return s.formed_leaving_now; });
-  table.list("recovery_by_family_to_date", "recovery by family, integrals since the start", "1", {"element", "family"},
+  table.list_history("recovery_by_family_to_date", "recovery by family, integrals since the start", "1", {"element", "family"},
              [](const Snapshot& s) { return s.recovery_by_family_to_date; });
-  table.list("recovery_to_date", "recovery, integrals since the start", "1", {"element"}, [](const Snapshot& s) { return s.recovery_to_date; });
-  table.list("extraction_to_date", "extraction, integrals since the start", "1", {"element"}, [](const Snapshot& s) { return s.extraction_to_date; });
-  table.list("held_in_vessels", "metal dissolved or formed in the vessels", "mol", {"element"}, [](const Snapshot& s) { return s.held_in_vessels; });
-  if (!result.steady_ok) return;
-  const Snapshot& steady = result.steady;
-  set.variables.push_back({"steady_recovery_by_family", "recovery by family at steady state", "1", {"element", "family"}, steady.recovery_by_family});
-  set.variables.push_back({"steady_recovery", "recovery at steady state", "1", {"element"}, steady.recovery_now});
-  set.variables.push_back({"steady_extraction", "extraction at steady state", "1", {"element"}, steady.extraction_now});
-  set.variables.push_back({"steady_formed_leaving", "metal leaving as formed solids over metal fed at steady state", "1", {"element"}, steady.formed_leaving_now});
+  table.list_history("recovery_to_date", "recovery, integrals since the start", "1", {"element"}, [](const Snapshot& s) { return s.recovery_to_date; });
+  table.list_history("extraction_to_date", "extraction, integrals since the start", "1", {"element"}, [](const Snapshot& s) { return s.extraction_to_date; });
+  table.list_history("held_in_vessels", "metal dissolved or formed in the vessels", "mol", {"element"}, [](const Snapshot& s) { return s.held_in_vessels; });
 }
 
 void add_units(TimeTable& table) {
@@ -121,12 +151,46 @@ void add_units(TimeTable& table) {
   table.unit_list("family_in_unit", "dissolved metal by family", "mol m-3", {"element", "family"}, [](const UnitSnapshot& u) -> const std::vector<double>& { return u.family; });
 }
 
+// One figure a stream and reported metal, weighed [kg/s] from amounts [mol/s].
+std::vector<double> metals(const RunResult& result, const Snapshot& snapshot, const std::function<double(const StreamSnapshot&, int element)>& amount) {
+  std::vector<double> out;
+  for (const StreamSnapshot& one : snapshot.streams)
+    for (int e : result.recovered) out.push_back(amount(one, e) * result.circuit->element_mass[e]);
+  return out;
+}
+
 void add_streams(TimeTable& table, const RunResult& result) {
+  const Circuit& circuit = *result.circuit;
   const PulpLayout& layout = result.circuit->context->layout;
   table.stream_list("stream_flow", "component in liquor and formed solids", "mol s-1", "component", 0, layout.components + 1, [](const StreamSnapshot& s) -> const std::vector<double>& { return s.flow; });
   table.stream_list("stream_dissolved", "component in the liquor", "mol s-1", "component", 0, layout.components + 1, [](const StreamSnapshot& s) -> const std::vector<double>& { return s.dissolved; });
   table.stream_list("stream_lots", "fed minerals carried", "mol s-1", "lot", layout.components + 1, layout.lots, [](const StreamSnapshot& s) -> const std::vector<double>& { return s.flow; });
   table.stream_list("stream_formed", "formed solids carried", "mol s-1", "mineral", 0, result.circuit->chemistry->phases.size(), [](const StreamSnapshot& s) -> const std::vector<double>& { return s.formed; });
+  table.list("stream_metal_dissolved", "metal dissolved in the liquor", "kg s-1", {"stream", "element"}, [&](const Snapshot& s) {
+    return metals(result, s, [&](const StreamSnapshot& one, int e) {
+      double amount = 0;
+      for (std::size_t j = 0; j < one.dissolved.size(); ++j) amount += circuit.component_elements[j][e] * one.dissolved[j];
+      return std::max(0.0, amount);  // noise of a metal that is not there is no metal
+    });
+  });
+  table.list("stream_metal_undissolved", "metal in fed minerals", "kg s-1", {"stream", "element"}, [&](const Snapshot& s) {
+    return metals(result, s, [&](const StreamSnapshot& one, int e) { return circuit.element_in_lots(e, one.flow); });
+  });
+  table.list("stream_metal_formed", "metal in formed solids", "kg s-1", {"stream", "element"}, [&](const Snapshot& s) {
+    return metals(result, s, [&](const StreamSnapshot& one, int e) {
+      double amount = 0;
+      for (std::size_t p = 0; p < one.formed.size(); ++p)
+        for (const Share& share : circuit.chemistry->phases[p].shares) amount += share.coefficient * circuit.component_elements[share.component][e] * one.formed[p];
+      return amount;
+    });
+  });
+  table.list("pregnant_liquor_molality", "molality of a species in the pregnant liquor", "mol kg-1", {"species"}, [&](const Snapshot& s) {
+    std::vector<double> molality = s.streams[circuit.pregnant_liquor].molality;
+    molality.resize(circuit.chemistry->species.size(), std::nan(""));  // nothing flows: none
+    return molality;
+  });
+  table.stream("stream_ionic_strength", "ionic strength; missing where no liquor flows", "mol kg-1",
+               [](const StreamSnapshot& s) { return s.molality.empty() ? std::nan("") : s.ionic_strength; });
   table.stream("stream_ph", "-log10 of the activity of H+", "1", [](const StreamSnapshot& s) { return s.ph; });
   table.stream("stream_liquor_flow", "volume flow of liquor", "m3 s-1", [](const StreamSnapshot& s) { return s.liquor_volume; });
   table.stream("stream_pulp_flow", "volume flow of pulp", "m3 s-1", [](const StreamSnapshot& s) { return s.pulp_volume; });
@@ -149,6 +213,14 @@ void add_reagents(ResultSet& set, TimeTable& table, const RunResult& result) {
   }
   set.variables.insert(set.variables.end(), {rate, use});
   set.texts.push_back(counted);
+  table.list("gas_taken_up", "taken up from air by all vessels; missing where none is", "kg s-1", {"component"}, [&](const Snapshot& s) {
+    std::vector<double> out(circuit.chemistry->component_names.size(), std::nan(""));
+    for (std::size_t l = 0; l < circuit.ledger_component.size(); ++l) {
+      double& sum = out[circuit.ledger_component[l]];
+      sum = (std::isnan(sum) ? 0 : sum) + s.ledger[l] * circuit.chemistry->component_mass[circuit.ledger_component[l]];
+    }
+    return out;
+  });
   table.list("oxygen_taken_up", "oxygen dissolved from air", "mol s-1", {"unit"}, [&](const Snapshot& s) {
     std::vector<double> out;
     for (int u : result.vessels) {
@@ -159,42 +231,6 @@ void add_reagents(ResultSet& set, TimeTable& table, const RunResult& result) {
     }
     return out;
   });
-}
-
-// The profile at rest of a run that also has a history.
-void add_steady(ResultSet& set, const RunResult& result) {
-  if (!result.steady_ok) return;
-  const Snapshot& steady = result.steady;
-  const auto units = [&](const char* name, const char* meaning, const char* unit, std::vector<std::string> axes,
-                         const std::function<std::vector<double>(const UnitSnapshot&)>& value) {
-    axes.insert(axes.begin(), "unit");
-    Variable variable{name, meaning, unit, axes, {}};
-    for (const UnitSnapshot& one : steady.units) {
-      const std::vector<double> values = value(one);
-      variable.values.insert(variable.values.end(), values.begin(), values.end());
-    }
-    set.variables.push_back(variable);
-  };
-  const auto streams = [&](const char* name, const char* meaning, const char* unit, std::vector<std::string> axes,
-                           const std::function<std::vector<double>(const StreamSnapshot&)>& value) {
-    axes.insert(axes.begin(), "stream");
-    Variable variable{name, meaning, unit, axes, {}};
-    for (const StreamSnapshot& one : steady.streams) {
-      const std::vector<double> values = value(one);
-      variable.values.insert(variable.values.end(), values.begin(), values.end());
-    }
-    set.variables.push_back(variable);
-  };
-  const int contents = result.circuit->context->layout.components + 1;
-  units("steady_ph", "-log10 of the activity of H+ at steady state", "1", {}, [](const UnitSnapshot& u) { return std::vector{u.ph}; });
-  units("steady_molality", "molality of a species at steady state", "mol kg-1", {"species"}, [](const UnitSnapshot& u) { return u.molality; });
-  units("steady_formed", "solid formed at steady state", "mol", {"mineral"}, [](const UnitSnapshot& u) { return u.formed; });
-  units("steady_retained", "fed mineral not dissolved at steady state", "mol", {"lot"}, [](const UnitSnapshot& u) { return u.lots; });
-  streams("steady_stream_flow", "component in liquor and formed solids at steady state", "mol s-1", {"component"},
-          [&](const StreamSnapshot& s) { return std::vector<double>(s.flow.begin(), s.flow.begin() + contents); });
-  streams("steady_stream_dissolved", "component in the liquor at steady state", "mol s-1", {"component"}, [](const StreamSnapshot& s) { return s.dissolved; });
-  streams("steady_stream_pulp_flow", "volume flow of pulp at steady state", "m3 s-1", {}, [](const StreamSnapshot& s) { return std::vector{s.pulp_volume}; });
-  streams("steady_stream_solids_flow", "mass flow of solids at steady state", "kg s-1", {}, [](const StreamSnapshot& s) { return std::vector{s.solids}; });
 }
 
 void add_closures(TimeTable& table) {
@@ -219,18 +255,20 @@ ResultSet layout_of(const RunResult& result, const SpeciesLibrary& library, cons
   set.attributes.emplace_back("leat_pregnant_liquor", result.circuit->streams[result.circuit->pregnant_liquor].name);
   add_axes(set, result, rows);
   add_chemistry(set, *result.circuit->chemistry, library);
-  TimeTable table(set, rows);
-  add_recoveries(set, table, result);
+  add_circuit(set, result);
+  TimeTable table(set, rows, result.steady_ok ? &result.steady : nullptr);
+  add_recoveries(table);
   add_units(table);
   add_streams(table, result);
   add_reagents(set, table, result);
-  add_steady(set, result);
   add_closures(table);
+  table.add_twins();
   const CvodeStatistics& cv = result.statistics;
   set.variables.push_back({"newton_iterations", "iterations of the whole-circuit steady solve", "1", {}, {double(result.steady_report.circuit.iterations)}});
   set.variables.push_back({"time_steps", "steps of the integration through time", "1", {}, {double(cv.steps)}});
   set.variables.push_back({"rate_evaluations", "evaluations of the rates through time", "1", {}, {double(cv.rate_evaluations)}});
   add_cautions(set, result.cautions);
+  set.texts.push_back({"failure", "why a steady state or a part of the history is not there; empty if all is", "", {result.failure}});
   return set;
 }
 

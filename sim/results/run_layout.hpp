@@ -6,7 +6,7 @@
 namespace leat {
 
 // The names, axes, units and meanings of the results file (outputs/README.md describes them; a test compares).
-inline constexpr const char* format_version = "1";
+inline constexpr const char* format_version = "2";
 
 struct SourceText {
   std::string file;     // name of the input file, without folders

@@ -14,6 +14,8 @@
 namespace leat {
 namespace {
 
+constexpr const char* csv_line_end = "\r\n";
+
 std::string shortest(double value) {
   std::array<char, 32> text;
   const auto end = std::to_chars(text.data(), text.data() + text.size(), value).ptr;
@@ -32,6 +34,13 @@ std::string csv_field(const std::string& text) {
   std::string quoted = "\"";
   for (char c : text) quoted += c == '"' ? std::string("\"\"") : std::string(1, c);
   return quoted + '"';
+}
+
+std::string shown(double value, const TableColumn& column, int digits) {
+  if (column.decimals < 0 || !std::isfinite(value)) return significant(value, digits);
+  std::array<char, 400> text;
+  const auto end = std::to_chars(text.data(), text.data() + text.size(), value, std::chars_format::fixed, column.decimals).ptr;
+  return {text.data(), end};
 }
 
 struct Layout {
@@ -103,7 +112,7 @@ std::string TextTableWriter::to_string() const {
     for (std::size_t i = 0; i < row.size(); ++i) {
       const double* number = std::get_if<double>(&row[i]);
       if (number) layout.right[i] = true;
-      line.push_back(number ? significant(*number, digits_) : one_line(std::get<std::string>(row[i])));
+      line.push_back(number ? shown(*number, columns_[i], digits_) : one_line(std::get<std::string>(row[i])));
     }
   }
   for (const auto& line : lines)
@@ -125,7 +134,7 @@ std::string TextTableWriter::to_csv() const {
     if (i > 0) out += ',';
     out += csv_field(column.unit.empty() ? column.header : column.header + " [" + column.unit + "]");
   }
-  out += '\n';
+  out += csv_line_end;
   for (const auto& row : rows_) {
     for (std::size_t i = 0; i < row.size(); ++i) {
       if (i > 0) out += ',';
@@ -133,7 +142,7 @@ std::string TextTableWriter::to_csv() const {
       if (!number) out += csv_field(std::get<std::string>(row[i]));
       else if (!std::isnan(*number)) out += shortest(*number);
     }
-    out += '\n';
+    out += csv_line_end;
   }
   return out;
 }

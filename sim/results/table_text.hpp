@@ -13,7 +13,8 @@ std::string significant(double value, int digits = 4);
 
 struct TableColumn {
   std::string header;
-  std::string unit;  // empty: none
+  std::string unit;   // empty: none
+  int decimals = -1;  // of numbers in to_string: so many behind the point; -1: significant digits
 };
 
 class TextTableWriter {
@@ -29,7 +30,8 @@ class TextTableWriter {
   // columns of text to the left. Ends with a line break.
   std::string to_string() const;
 
-  // Comma-separated: "header [unit]", numbers in the shortest form that reads back to the same value, NaN empty.
+  // Comma-separated as in RFC 4180, lines ended by CR LF: "header [unit]", numbers in the shortest form that reads back to the
+  // same value, NaN empty.
   std::string to_csv() const;
 
  private:

@@ -149,6 +149,24 @@ void watch_constants(const Chemistry& chemistry, std::span<const double> tempera
   }
 }
 
+std::vector<std::string> cautions_in_short(std::span<const Caution> cautions) {
+  std::vector<std::string> kinds, lines;
+  for (const Caution& one : cautions)
+    if (std::find(kinds.begin(), kinds.end(), one.kind) == kinds.end()) kinds.push_back(one.kind);
+  for (const std::string& kind : kinds) {
+    const Caution* worst = nullptr;
+    int places = 0;
+    for (const Caution& one : cautions)
+      if (one.kind == kind) {
+        ++places;
+        if (!worst || one.weight > worst->weight) worst = &one;
+      }
+    lines.push_back(fmt::format("{}: {}{}", kind, worst->text, places > 1 ? fmt::format(" (the worst of {} places, all in the results file)", places) : ""));
+  }
+  lines.push_back(closing_caution());
+  return lines;
+}
+
 std::string closing_caution() {
   return "estimates only: no substitute for measurement, a hazard study, local codes and licensed practice";
 }

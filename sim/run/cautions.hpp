@@ -32,6 +32,9 @@ void watch_constants(const Chemistry& chemistry, std::span<const double> tempera
 // Solids that may not form here although the liquor is supersaturated with them.
 void watch_solids(const Chemistry& chemistry, const std::string& place, std::span<const double> log10_omega, std::vector<Caution>& cautions);
 
+// The worst caution of each kind, with the number of places, and the closing sentence last: a line each.
+std::vector<std::string> cautions_in_short(std::span<const Caution> cautions);
+
 // The sentence every list of safety cautions ends with.
 std::string closing_caution();
 

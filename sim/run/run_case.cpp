@@ -112,10 +112,15 @@ bool run_timed(const HistorySpec& history, std::shared_ptr<const Circuit> circui
     }
     result.history.push_back(std::move(snapshot));
     if (options.progress) options.progress(t / history.until);
+    if (row < rows && options.stop && options.stop()) {
+      result.stopped = true;
+      result.failure = fmt::format("stopped at {:.6g} h of {:.6g} h", t / 3600, history.until / 3600);
+      break;
+    }
   }
   result.statistics = solver.statistics();
   result.time_seconds = std::chrono::duration<double>(std::chrono::steady_clock::now() - begin).count();
-  return true;
+  return !result.stopped;
 }
 
 }  // namespace
@@ -146,7 +151,7 @@ RunResult run_case(const Flowsheet& flowsheet, const BuiltCase& built, const Run
   std::vector<double> steady;
   result.steady_ok = run_steady(result, built.timed != nullptr, steady);
   const bool from_steady = built.timed && built.start.empty();
-  if (built.timed && (result.steady_ok || !from_steady)) {
+  if (built.timed && options.through_time && (result.steady_ok || !from_steady)) {
     result.timed = true;
     const std::string before = result.failure;
     result.failure.clear();

@@ -9,7 +9,9 @@ namespace leat {
 struct RunOptions {
   Finish finish = Finish::own;                   // of the cells inside the circuit
   double relative_tolerance = 1e-8;              // of CVODE
+  bool through_time = true;                      // run the history, if there is one
   std::function<void(double share)> progress;    // through time, 0 to 1; may be empty
+  std::function<bool()> stop;                    // asked after each stored time; true ends the history there; may be empty
 };
 
 // Bounds a result must keep to be shown [1].

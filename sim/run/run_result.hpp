@@ -82,6 +82,7 @@ struct RunResult {
   Snapshot steady;
   SteadyReport steady_report;
   bool timed = false, time_ok = false;
+  bool stopped = false;                          // the history ends early because it was asked to; all of it closes
   std::vector<Snapshot> history;
   CvodeStatistics statistics;
   double time_seconds = 0;                       // [s]

@@ -1,49 +1,82 @@
-#include <fmt/format.h>
-#include <unistd.h>
+#include <sstream>
 
-#include "models/register/register_models.hpp"
 #include "sim/input/read_flowsheet.hpp"
 #include "sim/results/hdf5_file.hpp"
-#include "sim/results/run_layout.hpp"
-#include "sim/run/run_case.hpp"
-#include "tools/leat/print_run.hpp"
+#include "sim/results/result_access.hpp"
+#include "tools/leat/solve_case.hpp"
 #include "tools/leat/verbs.hpp"
 
 namespace leat {
+namespace {
 
-int run_verb(const RunArguments& arguments) {
-  std::string text;
-  if (!read_text(arguments.file, text)) return Exit::input_faults;
-  Diagnostics diagnostics;
-  const SpeciesLibrary library = load_library();
-  const Catalogue catalogue = register_models();
-  const std::string kind = file_kind(text, arguments.file, diagnostics);
-  if (kind == "beaker") return speciate_verb(arguments);  // the file says what it is
-  const auto flowsheet = read_flowsheet(text, arguments.file, catalogue, diagnostics);
-  if (!flowsheet) return tell_faults(diagnostics, arguments.file);
-  const auto built = build_circuit(*flowsheet, library, catalogue, diagnostics);
-  if (!built || !diagnostics.ok()) return tell_faults(diagnostics, arguments.file);
-  tell_cautions(diagnostics);
-
-  RunOptions options;
-  const bool terminal = isatty(fileno(stderr)) != 0;
-  if (terminal) options.progress = [](double share) { fmt::print(stderr, "\rthrough time {:3.0f} %", 100 * share); };
-  const RunResult result = run_case(*flowsheet, *built, options);
-  if (terminal && result.timed) fmt::print(stderr, "\n");
-  if (!result.steady_ok || (result.timed && !result.time_ok)) {
-    fmt::print(stderr, "{}: {}\n", arguments.file, result.failure);
-    if (!result.timed || !result.time_ok) return Exit::not_solved;  // a history that closes is still worth having
-  }
-  const std::string out = arguments.out.empty() ? default_output(arguments.file) : arguments.out;
-  const ResultSet set = layout_of(result, *built->library, {base_name(arguments.file), text, flowsheet->title, program_name()});
-  const FileOutcome written = write_result_file(set, out);
-  if (!written.ok) {
-    fmt::print(stderr, "{}\n", written.message);
-    return Exit::machine_trouble;
-  }
-  print_run(result);
-  fmt::print("\nWritten to {} (HDF5, also netCDF-4; variables in outputs/README.md)\n", out);
-  return result.steady_ok ? Exit::done : Exit::not_solved;
+// The kind a file says it is; empty where it does not say, which the solver's reader tells as a fault.
+std::string kind_of(const std::string& text, const std::string& file) {
+  Diagnostics unused;
+  return file_kind(text, file, unused);
 }
+
+// Lines of a results file's short cautions.
+std::vector<std::string> cautions_of(const ResultSet& results) {
+  std::vector<std::string> lines;
+  const TextTable* texts = find_texts(results, "cautions_in_short");
+  std::istringstream all(texts && !texts->values.empty() ? texts->values.front() : "");
+  for (std::string line; std::getline(all, line);)
+    if (!line.empty()) lines.push_back(line);
+  return lines;
+}
+
+SolvedCase solve(const CaseSolver& solver, const std::string& text, const std::string& file) {
+  Progress progress("through time");
+  SolveSettings settings;
+  settings.progress = [&](double share) { progress.show(share); };
+  settings.stop = stop_asked;
+  listen_for_stop();
+  return solver.solve(text, file, settings);
+}
+
+// Writes the results, then lays them out: what is not written is not shown.
+void take_results(const ResultSet& results, const RunArguments& arguments, Answer& answer) {
+  const std::string out = arguments.out.empty() ? default_output(arguments.file, ".h5") : arguments.out;
+  const FileOutcome outcome = write_result_file(results, out);
+  if (!outcome.ok) {
+    answer.exit_code = Exit::machine_trouble;
+    answer.failure = outcome.message;
+    return;
+  }
+  answer.title = attribute(results, "title");
+  if (!answer.failure.empty()) answer.lines.push_back(answer.failure);
+  answer.tables = tables_of(results);
+  answer.cautions = cautions_of(results);
+  answer.written.emplace_back("results", out);
+}
+
+int solve_and_say(const char* verb, const RunArguments& arguments, bool beakers_only) {
+  Answer answer;
+  answer.verb = verb;
+  answer.file = arguments.file;
+  Diagnostics reading;
+  const std::string text = read_text(arguments.file, reading);
+  if (!take_findings(reading, answer)) return say(answer, arguments.manner);
+  const std::string kind = kind_of(text, arguments.file);
+  if (beakers_only && kind == "flowsheet") {
+    answer.exit_code = Exit::input_faults;
+    answer.failure = "is a flowsheet; use leat run";
+    return say(answer, arguments.manner);
+  }
+  if (!kind.empty() && !knows_csv(arguments.manner, table_names(kind == "beaker" ? "beaker" : "run"), answer)) return say(answer, arguments.manner);
+  const CaseSolver solver;
+  const SolvedCase solved = solve(solver, text, arguments.file);
+  take_findings(solved.diagnostics, answer);
+  answer.exit_code = solved.exit;
+  answer.failure = solved.failure;
+  if (solved.results) take_results(*solved.results, arguments, answer);
+  return say(answer, arguments.manner);
+}
+
+}  // namespace
+
+int run_verb(const RunArguments& arguments) { return solve_and_say("run", arguments, false); }
+
+int speciate_verb(const RunArguments& arguments) { return solve_and_say("speciate", arguments, true); }
 
 }  // namespace leat

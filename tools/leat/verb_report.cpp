@@ -1,0 +1,5 @@
+#include "tools/leat/verbs.hpp"
+
+namespace leat {
+
+}  // namespace leat
