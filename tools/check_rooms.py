@@ -40,7 +40,7 @@ LIBRARIES = [
     ("SQLite", r"sqlite3\.h", "sim/study"), ("xxHash", r"xxhash\.h", "sim/study"), ("NLopt", r"nlopt\.h(pp)?", "sim/study"), ("GSL", r"gsl/", "sim/study"),
     ("JSON", r"nlohmann/", "sim/results"), ("xlsxwriter", r"xlsxwriter\.h", "sim/results"),
 ]
-SYSTEM = r"[a-z_0-9]+|(assert|ctype|errno|fcntl|fenv|float|inttypes|limits|locale|math|poll|pthread|pwd|setjmp|signal|stdarg|stddef|stdint|" \
+SYSTEM = r"[a-z_0-9]+|(assert|ctype|errno|fcntl|fenv|float|inttypes|limits|locale|math|poll|pthread|pwd|sched|setjmp|signal|stdarg|stddef|stdint|" \
          r"stdio|stdlib|string|termios|time|unistd|wchar)\.h|sys/\w+\.h"
 
 

@@ -209,7 +209,9 @@ std::optional<VariedInput> read_varied(std::string_view sentence, const Place& p
   }
   const std::string_view values = trim(sentence.substr(sign + 1));
   std::optional<VariedInput> out;
-  if (values.starts_with('[')) {
+  if (values.starts_with('[') && !values.ends_with(']')) {
+    diagnostics.fault(Code::bad_yaml, place, fmt::format("'{}' is a list opened by '[' that is not closed; write for example {}", shown_text(values), list_example));
+  } else if (values.starts_with('[')) {
     Diagnostics own;
     const auto list = read_yaml(values, place.file, own);
     if (list && list->is_list()) out = read_value_list(*list, own);

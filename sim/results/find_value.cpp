@@ -59,7 +59,8 @@ class LabelReader {
     std::vector<std::pair<std::size_t, std::size_t>> fits;  // length, place
     for (std::size_t k = 0; k < axis.size(); ++k) {
       const std::string label = label_of(axis, k);
-      if (!label.empty() && rest.starts_with(label) && (rest.size() == label.size() || rest[label.size()] == '.')) fits.emplace_back(label.size(), k);
+      const bool ends = rest.size() == label.size() || (rest.size() > label.size() + 1 && rest[label.size()] == '.');
+      if (!label.empty() && rest.starts_with(label) && ends) fits.emplace_back(label.size(), k);
     }
     std::sort(fits.rbegin(), fits.rend());
     for (const auto& [length, k] : fits) {

@@ -232,7 +232,11 @@ class FileBuilder {
     std::vector<const char*> pointers;
     for (const std::string& text : texts) shown.push_back(readable_text(text));
     for (const std::string& text : shown) pointers.push_back(text.c_str());
-    write_numbers(data, text_type(H5T_VARIABLE), pointers);
+    if (pointers.empty()) return;
+    // Texts are converted through a buffer that the library clears for each call; its own choice is 1 MB.
+    const Handle transfer(H5Pcreate(H5P_DATASET_XFER), H5Pclose, "values");
+    need(H5Pset_buffer(transfer, std::clamp<std::size_t>(64 * pointers.size(), 4096, 1 << 20), nullptr, nullptr), "values");
+    need(H5Dwrite(data, text_type(H5T_VARIABLE), H5S_ALL, H5S_ALL, transfer, pointers.data()), "values");
   }
 
   const ResultSet& results_;

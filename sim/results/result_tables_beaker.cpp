@@ -64,8 +64,8 @@ ResultTable dissolved_table(const ResultView& view) {
 
 // Who holds each component: share of its dissolved total in each species, the larger ones.
 ResultTable holder_table(const ResultView& view) {
-  ResultTable table{"holders", "Who holds what (species with at least 0.1 % somewhere)", {{"total", ""}, {"held by", ""}}, {}, ""};
-  add_step_columns(view, "% of dissolved", table);
+  ResultTable table{"holders", "Who holds what, of the dissolved total (species with at least 0.1 % somewhere)", {{"total", ""}, {"held by", ""}}, {}, ""};
+  add_step_columns(view, "%", table);
   const std::size_t water = view.size("component") - 1;
   for (const std::size_t j : told_components(view)) {
     std::vector<double> whole;

@@ -124,7 +124,7 @@ ResultTable distribution_table(const ResultView& view) {
       double most = 0;
       for (std::size_t r = 0; r < rungs_of(view); ++r) most = std::fmax(most, view.at("share", {r, j, i}));
       if (most < least_share) continue;
-      table.columns.push_back({view.labels("species")[i], "% of " + view.labels("component")[j]});
+      table.columns.push_back({view.labels("component")[j] + " as " + view.labels("species")[i], "%"});
       for (std::size_t r = 0; r < rungs_of(view); ++r) table.rows[r].push_back(percent(view.at("share", {r, j, i})));
     }
   if (table.columns.size() == first.columns.size()) table.rows.clear();

@@ -101,9 +101,9 @@ ResultTable recovery_table(const ResultView& view, const Moment& now) {
 
 // Where each metal goes: dissolved, formed and undissolved in each stream that leaves.
 ResultTable metal_table(const ResultView& view, const Moment& now) {
-  ResultTable table{"metals", "Where each metal goes, " + now.words(),
+  ResultTable table{"metals", "Where each metal goes, " + now.words() + " (% of the metal fed)",
                     {{"metal", ""}, {"leaves in", ""}, {"dissolved", "kg/h"}, {"formed", "kg/h"}, {"undissolved", "kg/h"},
-                     {"dissolved", "% of fed"}, {"formed", "% of fed"}, {"undissolved", "% of fed"}}, {}, ""};
+                     {"dissolved", "%"}, {"formed", "%"}, {"undissolved", "%"}}, {}, ""};
   const auto add = [&](const std::string& metal, const std::string& where, const std::vector<double>& flows, double fed) {
     Row row = {metal, where};
     for (const double flow : flows) row.push_back(flow * seconds_an_hour);

@@ -78,7 +78,7 @@ class TimeTable {
 
 void add_axes(ResultSet& set, const RunResult& result, const Rows& rows) {
   const Circuit& circuit = *result.circuit;
-  Axis time{"time", "time since the start", "h", {}, {}, true};
+  Axis time{"time", "time since the start", "h", {}, {}, !result.history.empty()};
   for (const Snapshot* row : rows) time.values.push_back(row->time / 3600);
   Axis unit{"unit", "vessel", "", {}, {}, false}, stream{"stream", "stream", "", {}, {}, false};
   for (int u : result.vessels) unit.labels.push_back(circuit.units[u].name);

@@ -111,9 +111,9 @@ TEST(TextTable, ControlCharactersCannotBreakALine) {
 
 TEST(TextTable, CsvReadsBackToTheSameValue) {
   EXPECT_EQ(example().to_csv(),
-            "stream,flow [m3/h],T [°C],note\n"
-            "barren,22,25,\"make-up, \"\"fresh\"\"\"\n"
-            "lixiviant µ,0.30000000000000004,,\n");
+            "stream,flow [m3/h],T [°C],note\r\n"
+            "barren,22,25,\"make-up, \"\"fresh\"\"\"\r\n"
+            "lixiviant µ,0.30000000000000004,,\r\n");
 }
 
 TEST(TextTable, RowsMustFit) {

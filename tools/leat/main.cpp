@@ -64,6 +64,7 @@ void add_study_verbs(CLI::App& app, Words& words, std::vector<Verb>& verbs) {
   campaign->add_option("--shard", words.campaign.shard, "I/N: only the I-th of N parts, for clusters")->type_name("I/N");
   campaign->add_option("--merge", words.campaign.merge, "ledgers of shards, to be put into one")->type_name("LEDGER ...");
   campaign->add_option("--workers", words.campaign.workers, "cases solved at once; default one a core")->check(CLI::Range(1, 1024));
+  campaign->add_flag("--retry", words.campaign.retry, "solve crashed and timed-out cases once more");
   add_out(campaign, words.campaign, "ledger; default outputs/NAME.ledger");
   verbs.push_back({campaign, &words.campaign, [&] { return campaign_verb(words.campaign); }});
   CLI::App* report = add_verb(app, "report", "make one HTML page of a results file, or of a campaign's ledger", words.report, "results file or ledger");

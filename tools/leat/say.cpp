@@ -92,8 +92,9 @@ int say(const Answer& answer, const Manner& manner) {
 
 bool knows_csv(const Manner& manner, const std::vector<std::string>& names, Answer& answer) {
   if (manner.csv.empty() || manner.csv == "all" || std::find(names.begin(), names.end(), manner.csv) != names.end()) return true;
+  const std::string hint = did_you_mean(manner.csv, names);  // ends with a question mark
   answer.exit_code = Exit::usage;
-  answer.failure = fmt::format("--csv {}: there is no such table{}; there is {} and all", manner.csv, did_you_mean(manner.csv, names), fmt::join(names, ", "));
+  answer.failure = fmt::format("--csv {}: no table of that name{}{} there is {}, and all", manner.csv, hint, hint.empty() ? ";" : "", fmt::join(names, ", "));
   return false;
 }
 

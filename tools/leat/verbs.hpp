@@ -24,6 +24,7 @@ struct CampaignArguments : RunArguments {
   std::string shard;           // i/n
   std::vector<std::string> merge;  // ledgers of shards
   int workers = 0;             // 0: one a core
+  bool retry = false;          // crashed and timed-out cases once more
 };
 struct ReportArguments : RunArguments {
   int pages = 10;              // of a ledger: pages of so many leading cases
