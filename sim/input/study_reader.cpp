@@ -41,8 +41,11 @@ bool StudyReader::head(const YamlNode& root, const std::string& kind, std::strin
   if (const YamlNode* node = typed_.required(root, "kind")) {
     const auto word = typed_.choice(*node, file_kinds());
     right = word && *word == kind;
-    if (word && !right)
-      fault(Code::unknown_name, node->place, fmt::format("the file is a {}; use {}. A {} is needed here", *word, verb_for(*word), kind));
+    if (word && !right) {
+      const bool a_case = *word == "flowsheet" || *word == "beaker";
+      const std::string step = kind == "ladder" && a_case ? " To step one of its inputs, say which behind --vary" : "";
+      fault(Code::unknown_name, node->place, fmt::format("the file is of kind '{}'; {} is needed here. Use {}.{}", *word, kind, verb_for(*word), step));
+    }
   }
   if (const YamlNode* node = root.find("title")) title = typed_.text(*node).value_or("");
   return right;

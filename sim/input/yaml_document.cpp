@@ -156,8 +156,7 @@ class NodeBuilder : public YAML::EventHandler {
   void OnMapEnd() override { close(); }
 
  private:
-  // A list or map that is still open. What it holds so far stands at the end of items_ or entries_, from `first` on: growing one
-  // long vector costs less than growing one for each map.
+  // A list or map that is still open. What it holds so far ends items_ or entries_, from `first` on: one long vector grows seldom.
   struct Frame {
     YamlNode node;
     std::size_t first = 0;

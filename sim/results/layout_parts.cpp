@@ -19,6 +19,36 @@ std::string word_of(ComponentRole role) {
   return "ligand";
 }
 
+// The equilibrium constants in play, with their sources.
+void add_constants(ResultSet& set, const Chemistry& chemistry, const SpeciesLibrary& library) {
+  Axis constant{"constant", "species or solid an equilibrium constant belongs to", "", {}, {}, false};
+  Variable log10_k{"constant_log10_k", "decadic logarithm of the constant, as measured", "1", {"constant"}, {}};
+  Variable temperature{"constant_temperature", "temperature of the measurement", "K", {"constant"}, {}};
+  Variable strength{"constant_ionic_strength", "ionic strength of the measurement", "mol kg-1", {"constant"}, {}};
+  Variable spread{"constant_spread", "half-width of published values, decadic", "1", {"constant"}, {}};
+  Variable enthalpy{"constant_enthalpy", "reaction enthalpy", "J mol-1", {"constant"}, {}};
+  TextTable reaction{"constant_reaction", "reaction of the constant", "constant", {}};
+  TextTable key{"constant_key", "short name of the source", "constant", {}};
+  TextTable from{"constant_source", "source of the constant", "constant", {}};
+  TextTable evidence{"constant_evidence", "how well the source is known", "constant", {}};
+  for (const UsedConstant& used : chemistry.constants) {
+    constant.labels.push_back(used.name);
+    log10_k.values.push_back(used.constant.log10_k);
+    temperature.values.push_back(used.constant.temperature);
+    strength.values.push_back(used.constant.ionic_strength);
+    spread.values.push_back(used.constant.spread);
+    enthalpy.values.push_back(used.constant.enthalpy.value_or(std::nan("")));
+    reaction.values.push_back(used.reaction);
+    const auto source = library.sources.find(used.constant.provenance.source);
+    from.values.push_back(source == library.sources.end() ? used.constant.provenance.source : source->second);
+    key.values.push_back(used.constant.provenance.source);
+    evidence.values.push_back(used.constant.provenance.evidence);
+  }
+  set.axes.push_back(constant);
+  set.texts.insert(set.texts.end(), {reaction, key, from, evidence});
+  set.variables.insert(set.variables.end(), {log10_k, temperature, strength, spread, enthalpy});
+}
+
 }  // namespace
 
 void add_source(ResultSet& set, const SourceText& source, const char* kind) {
@@ -68,34 +98,12 @@ void add_chemistry(ResultSet& set, const Chemistry& chemistry, const SpeciesLibr
     may_form.values.push_back(phase.may_form ? 1 : 0);
   }
   Axis family{"family", "family of complexes", "", chemistry.families, {}, false};
-  Axis constant{"constant", "species or solid an equilibrium constant belongs to", "", {}, {}, false};
-  Variable log10_k{"constant_log10_k", "decadic logarithm of the constant, as measured", "1", {"constant"}, {}};
-  Variable temperature{"constant_temperature", "temperature of the measurement", "K", {"constant"}, {}};
-  Variable strength{"constant_ionic_strength", "ionic strength of the measurement", "mol kg-1", {"constant"}, {}};
-  Variable spread{"constant_spread", "half-width of published values, decadic", "1", {"constant"}, {}};
-  Variable enthalpy{"constant_enthalpy", "reaction enthalpy", "J mol-1", {"constant"}, {}};
-  TextTable reaction{"constant_reaction", "reaction of the constant", "constant", {}};
-  TextTable key{"constant_key", "short name of the source", "constant", {}};
-  TextTable from{"constant_source", "source of the constant", "constant", {}};
-  TextTable evidence{"constant_evidence", "how well the source is known", "constant", {}};
-  for (const UsedConstant& used : chemistry.constants) {
-    constant.labels.push_back(used.name);
-    log10_k.values.push_back(used.constant.log10_k);
-    temperature.values.push_back(used.constant.temperature);
-    strength.values.push_back(used.constant.ionic_strength);
-    spread.values.push_back(used.constant.spread);
-    enthalpy.values.push_back(used.constant.enthalpy.value_or(std::nan("")));
-    reaction.values.push_back(used.reaction);
-    const auto source = library.sources.find(used.constant.provenance.source);
-    from.values.push_back(source == library.sources.end() ? used.constant.provenance.source : source->second);
-    key.values.push_back(used.constant.provenance.source);
-    evidence.values.push_back(used.constant.provenance.evidence);
-  }
-  set.axes.insert(set.axes.end(), {species, component, mineral, family, constant});
+  set.axes.insert(set.axes.end(), {species, component, mineral, family});
   set.texts.push_back({"species_family", "family of each species", "species", families});
-  set.texts.insert(set.texts.end(), {role, complexes, reaction, key, from, evidence});
-  set.variables.insert(set.variables.end(), {content, charge, component_mass, mineral_mass, log10_k, temperature, strength, spread, enthalpy});
+  set.texts.insert(set.texts.end(), {role, complexes});
+  set.variables.insert(set.variables.end(), {content, charge, component_mass, mineral_mass});
   set.flags.push_back(may_form);
+  add_constants(set, chemistry, library);
 }
 
 void add_cautions(ResultSet& set, const std::vector<Caution>& cautions) {

@@ -2,6 +2,7 @@
 #pragma once
 
 #include <string>
+#include <vector>
 
 #include "sim/results/result_set.hpp"
 #include "sim/study/campaign_result.hpp"
@@ -13,6 +14,9 @@ bool page_available();
 
 // The page of a run, beaker or ladder (attribute leat_kind). std::logic_error for another kind.
 std::string page_of(const ResultSet& results);
+
+// Places in `cases` of those that are done, best first; those without a value last, equal ones by number.
+std::vector<std::size_t> ranked_cases(const CampaignResult& campaign);
 
 // The page of a campaign; cases whose page path is given are linked.
 std::string page_of(const CampaignResult& campaign);

@@ -31,9 +31,10 @@ std::vector<double> by_step(const ResultView& view, const std::function<double(s
 
 void add_state_charts(PageBuilder& page, const ResultView& view) {
   PageChart ph = step_chart(view, "ph-by-step", "pH and liquor, step by step", "pH (left) and the volume of the liquor (right) at the end of each step.");
-  ph.views = {{"", {"pH", "", false, true}, ChartAxis{"liquor, L", "L", false, false, 0.0, {}},
+  ph.views = {{"", {}, ChartAxis{"liquor, L", "L", false, false, 0.0, {}},
                {{"pH", by_step(view, [&](std::size_t k) { return view.at("ph", {k}); })},
-                {"liquor", by_step(view, [&](std::size_t k) { return 1000 * view.at("liquor_volume", {k}); }), -1, "", false, true}}}};
+                {"liquor", by_step(view, [&](std::size_t k) { return 1000 * view.at("liquor_volume", {k}); }), -1, "", "", true}}}};
+  ph.views.front().y = ph_axis(ph.views.front().series);
   page.chart(ph);
 
   const bool weighed = view.has("mineral_mass");

@@ -3,6 +3,7 @@
 #include <fmt/format.h>
 #include <map>
 
+#include "sim/results/page.hpp"
 #include "sim/results/page_sections.hpp"
 
 namespace leat {
@@ -12,21 +13,6 @@ std::string with_unit(const std::string& name, const std::string& unit) { return
 
 std::size_t rank_column(const CampaignResult& campaign) {
   return static_cast<std::size_t>(std::find(campaign.watch.begin(), campaign.watch.end(), campaign.rank_by) - campaign.watch.begin());
-}
-
-// Indices of the cases that are done, best first; equal ones and those without a value by number.
-std::vector<std::size_t> ranked(const CampaignResult& campaign) {
-  const std::size_t by = rank_column(campaign);
-  std::vector<std::size_t> order;
-  for (std::size_t k = 0; k < campaign.cases.size(); ++k)
-    if (campaign.cases[k].status == CaseStatus::done) order.push_back(k);
-  if (by >= campaign.watch.size()) return order;
-  const auto value = [&](std::size_t k) {
-    const double v = by < campaign.cases[k].watched.size() ? campaign.cases[k].watched[by] : std::nan("");
-    return std::isnan(v) ? -INFINITY : campaign.largest_first ? v : -v;
-  };
-  std::stable_sort(order.begin(), order.end(), [&](std::size_t a, std::size_t b) { return value(a) > value(b); });
-  return order;
 }
 
 std::string said(CaseStatus status) {
@@ -127,6 +113,20 @@ void add_failures(PageBuilder& page, const CampaignResult& campaign) {
 
 }  // namespace
 
+std::vector<std::size_t> ranked_cases(const CampaignResult& campaign) {
+  const std::size_t by = rank_column(campaign);
+  std::vector<std::size_t> order;
+  for (std::size_t k = 0; k < campaign.cases.size(); ++k)
+    if (campaign.cases[k].status == CaseStatus::done) order.push_back(k);
+  if (by >= campaign.watch.size()) return order;
+  const auto value = [&](std::size_t k) {
+    const double v = by < campaign.cases[k].watched.size() ? campaign.cases[k].watched[by] : std::nan("");
+    return std::isnan(v) ? -INFINITY : campaign.largest_first ? v : -v;
+  };
+  std::stable_sort(order.begin(), order.end(), [&](std::size_t a, std::size_t b) { return value(a) > value(b); });
+  return order;
+}
+
 void add_effects(PageBuilder& page, const CampaignResult& campaign) {
   constexpr std::size_t most_values = 40;
   const std::size_t by = rank_column(campaign);
@@ -171,12 +171,12 @@ void add_effects(PageBuilder& page, const CampaignResult& campaign) {
 }
 
 void add_campaign(PageBuilder& page, const CampaignResult& campaign) {
-  const std::vector<std::size_t> order = ranked(campaign);
+  const std::vector<std::size_t> order = ranked_cases(campaign);
   page.section("answer", "The answer");
   add_counts(page, campaign, order);
   ResultTable meanings{"watched", "What is watched", {{"result", ""}, {"unit", ""}, {"meaning", ""}}, {}, ""};
   for (std::size_t k = 0; k < campaign.watch.size(); ++k)
-    meanings.rows.push_back({campaign.watch[k], campaign.watch_units[k], k < campaign.watch_meanings.size() ? campaign.watch_meanings[k] : std::string()});
+    meanings.rows.push_back({campaign.watch[k], campaign.watch_units[k] == "1" ? std::string() : campaign.watch_units[k], k < campaign.watch_meanings.size() ? campaign.watch_meanings[k] : std::string()});
   page.table({meanings, false, false, {}, most_rows});
   add_effects(page, campaign);
   add_cloud(page, campaign, order);

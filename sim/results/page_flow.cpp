@@ -29,7 +29,7 @@ FlowOperation operation_of(const ResultView& view, const Moment& now, std::size_
 FlowStream stream_of(const ResultView& view, const Moment& now, std::size_t s) {
   FlowStream made{view.labels("stream")[s], view.text("stream_from", s), view.text("stream_to", s), view.text("stream_leaves_as", s), {}};
   const double liquor = now.at("stream_liquor_flow", {s}), solids = now.at("stream_solids_flow", {s});
-  made.numbers = {now.at("stream_pulp_flow", {s}) * hour, solids * hour / 1000, liquor * hour, 100 * ratio(solids, now.at("stream_mass_flow", {s})), now.at("stream_ph", {s})};
+  made.numbers = {now.at("stream_pulp_flow", {s}) * hour, solids * hour / 1000, now.at("stream_mass_flow", {s}) * hour / 1000, liquor * hour, 100 * ratio(solids, now.at("stream_mass_flow", {s})), now.at("stream_ph", {s})};
   for (std::size_t e = 0; e < view.size("element"); ++e) made.numbers.push_back(1000 * ratio(now.at("stream_metal_dissolved", {s, e}), liquor));
   for (std::size_t e = 0; e < view.size("element"); ++e)
     made.numbers.push_back((now.at("stream_metal_dissolved", {s, e}) + now.at("stream_metal_undissolved", {s, e}) + now.at("stream_metal_formed", {s, e})) * hour);
@@ -41,8 +41,8 @@ FlowStream stream_of(const ResultView& view, const Moment& now, std::size_t s) {
 void add_flow(PageBuilder& page, const ResultView& view, const Moment& now) {
   if (!find_texts(view.results(), "stream_from") || view.size("operation") == 0) return;
   FlowDiagram flow;
-  flow.columns = {{"pulp", "m³/h"}, {"solids", "t/h"}, {"liquor", "m³/h"}, {"solids by mass", "%"}, {"pH", "1"}};
-  flow.shorts = {"", "", "liquor", "solids", "pH"};
+  flow.columns = {{"pulp", "m³/h"}, {"solids", "t/h"}, {"mass", "t/h"}, {"liquor", "m³/h"}, {"solids by mass", "%"}, {"pH", "1"}};
+  flow.shorts = {"", "", "", "liquor", "solids", "pH"};
   for (const std::string& metal : view.labels("element")) {
     flow.columns.push_back({metal + " dissolved", "mg/L"});
     flow.shorts.push_back(metal);
@@ -51,7 +51,7 @@ void add_flow(PageBuilder& page, const ResultView& view, const Moment& now) {
     flow.columns.push_back({metal + " in all, solids too", "kg/h"});
     flow.shorts.push_back(metal);
   }
-  if (view.size("element") > 0) flow.chosen = 5;
+  if (view.size("element") > 0) flow.chosen = 6;
   for (std::size_t k = 0; k < view.size("operation"); ++k) flow.operations.push_back(operation_of(view, now, k));
   for (std::size_t s = 0; s < view.size("stream"); ++s) flow.streams.push_back(stream_of(view, now, s));
   page.section("flow", "Flow diagram");

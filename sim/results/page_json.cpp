@@ -46,7 +46,7 @@ Json series_json(const ChartSeries& series) {
   Json json = {{"name", word(series.name)}, {"values", numbers(series.values)}};
   if (series.look >= 0) json["look"] = series.look;
   if (!series.rest.empty()) json["rest"] = series.rest;
-  if (series.dashed) json["dash"] = {3, 3};
+  if (!series.stroke.empty()) json["dash"] = series.stroke == "dashed" ? Json{4, 4} : Json::array();
   if (series.right) json["right"] = true;
   if (!series.at.empty()) json["x"] = numbers(series.at);
   return json;
@@ -86,7 +86,7 @@ Json cloud_json(const CloudChart& cloud) {
 }
 
 Json flow_json(const FlowDiagram& flow) {
-  Json json = {{"operations", Json::array()}, {"streams", Json::array()}, {"columns", Json::array()}, {"always", {0, 1}}, {"solids", 1}, {"chosen", nullptr}};
+  Json json = {{"operations", Json::array()}, {"streams", Json::array()}, {"columns", Json::array()}, {"always", {0, 1}}, {"solids", 1}, {"mass", 2}, {"chosen", nullptr}};
   if (flow.chosen >= 0) json["chosen"] = flow.chosen;
   for (const FlowOperation& one : flow.operations) {
     Json facts = Json::array();

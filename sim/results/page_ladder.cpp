@@ -29,9 +29,11 @@ Rungs rungs_of(const ResultView& view) {
     if (first == std::string::npos || typed[first] < '0' || typed[first] > '9') rungs.quantities = false;
   }
   std::string unit = view.attribute("leat_stepped_units");
+  if (unit == "mixed") unit = "each as typed";
   if (unit == "1") unit.clear();
   std::string path = view.attribute("leat_stepped_path");
-  if (rungs.series.size() > 1) path = path.substr(path.rfind('.') == std::string::npos ? 0 : path.rfind('.') + 1);  // each series has its own
+  for (std::size_t k = 0; k < view.size("series_name"); ++k)
+    if (view.text("stepped_path", k) != view.attribute("leat_stepped_path")) path = "stepped input";  // each series has its own
   rungs.x = {path + (unit.empty() ? "" : ", " + unit), unit, view.attribute("leat_scale") == "logarithmic" && rungs.quantities};
   if (rungs.x.logarithmic) rungs.x.title += ", logarithmic";
   return rungs;
@@ -106,7 +108,7 @@ class LadderCharts {
   }
   void distribution() {
     constexpr double least = 0.001;
-    constexpr std::size_t most = 9;
+    constexpr std::size_t most = 8;
     PageChart chart = start("distribution-by-step", "Distribution of each metal among its complexes", "All dissolved forms of a metal are 100 %: which complex carries it as the input is stepped.");
     chart.kind = rungs_.quantities ? ChartKind::areas : ChartKind::bars;
     chart.choose = "Metal";
@@ -139,7 +141,8 @@ class LadderCharts {
   }
   void state() {
     PageChart ph = start("ph-by-step", "pH against the stepped input", "pH of the liquor.");
-    keep(ph, side_by_side("", {"pH", "", false, true}, [&](std::size_t r) { return view_.at("ph", {r}); }));
+    keep(ph, side_by_side("", {"pH", ""}, [&](std::size_t r) { return view_.at("ph", {r}); }));
+    for (ChartView& one : ph.views) one.y = ph_axis(one.series);
     page_.chart(ph);
     PageChart solids = start("solids-by-step", "Solids formed against the stepped input", "Solids in equilibrium with the liquor; where one vanishes the liquor is no longer saturated with it.");
     solids.choose = "Solid";

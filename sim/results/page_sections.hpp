@@ -40,7 +40,10 @@ bool is_metal(const ResultView& view, std::size_t component);
 // How the species share each component, a column a place (vessel, step): one view a component. amounts(place, species): molality.
 // The largest `most` species stand by name, the rest together.
 std::vector<ChartView> sharing_views(const ResultView& view, std::size_t places, const std::function<double(std::size_t, std::size_t)>& amount,
-                                     const std::function<bool(std::size_t component)>& wanted, std::size_t most = 9);
+                                     const std::function<bool(std::size_t component)>& wanted, std::size_t most = 8);
+
+// An axis of pH between whole halves around all values.
+ChartAxis ph_axis(const std::vector<ChartSeries>& series);
 
 void add_run(PageBuilder& page, const ResultView& view);
 void add_flow(PageBuilder& page, const ResultView& view, const Moment& now);

@@ -1,6 +1,7 @@
 #include <algorithm>
 #include <cmath>
 #include <fmt/format.h>
+#include <map>
 #include <sstream>
 
 #include "models/core/constants.hpp"
@@ -102,12 +103,21 @@ void add_constants(PageBuilder& page, const ResultView& view) {
   page.paragraph("Every equilibrium constant in play, as measured, with where it is from and how well that is known. Press a heading to sort.");
   ResultTable table{"constants", "", {{"constant", ""}, {"log10 K", "", 2}, {"spread", "", 2}, {"T", "degC", 1}, {"I", "mol/kg"}, {"enthalpy", "kJ/mol", 1},
                                       {"reaction", ""}, {"evidence", ""}, {"source", ""}}, {}, ""};
-  for (std::size_t k = 0; k < view.size("constant"); ++k)
+  std::map<std::string, std::string> sources;  // short name and citation
+  for (std::size_t k = 0; k < view.size("constant"); ++k) {
+    const std::string cited = view.text("constant_key", k);
     table.rows.push_back({view.labels("constant")[k], view.at("constant_log10_k", {k}), view.at("constant_spread", {k}), view.at("constant_temperature", {k}) - zero_celsius,
                           view.at("constant_ionic_strength", {k}), view.at("constant_enthalpy", {k}) / 1000, view.text("constant_reaction", k),
-                          view.text("constant_evidence", k), view.text("constant_source", k)});
+                          view.text("constant_evidence", k), cited.empty() ? view.text("constant_source", k) : cited});
+    if (!cited.empty()) sources[cited] = view.text("constant_source", k);
+  }
   table.note = "spread: half-width of published values, in decades. A dash under enthalpy: none is known, the constant is used as measured.";
   page.table({table, true, true, {}, 100000});
+  if (sources.empty()) return;
+  page.heading("Sources");
+  std::string list = "<dl class=\"sources\">\n";
+  for (const auto& [key, citation] : sources) list += "<div><dt>" + escaped(key) + "</dt><dd>" + escaped(citation) + "</dd></div>\n";
+  page.html(list + "</dl>\n");
 }
 
 void add_facts(PageBuilder& page, const ResultView& view, TableShelf& shelf) {
@@ -152,6 +162,19 @@ bool of_interest(const ResultView& view, std::size_t component) {
 }
 
 bool is_metal(const ResultView& view, std::size_t component) { return view.text("component_role", component) == "metal"; }
+
+ChartAxis ph_axis(const std::vector<ChartSeries>& series) {
+  ChartAxis axis{"pH", ""};
+  axis.fit = true;
+  double low = INFINITY, high = -INFINITY;
+  for (const ChartSeries& one : series)
+    for (double value : one.values)
+      if (std::isfinite(value) && !one.right) low = std::min(low, value), high = std::max(high, value);
+  if (low > high) return axis;
+  axis.min = std::floor(2 * low) / 2;
+  axis.max = std::max(std::ceil(2 * high) / 2, *axis.min + 0.5);
+  return axis;
+}
 
 std::vector<ChartView> sharing_views(const ResultView& view, std::size_t places, const std::function<double(std::size_t, std::size_t)>& amount,
                                      const std::function<bool(std::size_t)>& wanted, std::size_t most) {

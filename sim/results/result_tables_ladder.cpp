@@ -30,11 +30,19 @@ bool steps_numbers(const ResultView& view) {
   return true;
 }
 
-// The first columns of each table: which rung.
+// What is stepped: a path, or words where the series step different ones.
+std::string stepped_name(const ResultView& view) {
+  const std::string path = view.attribute("leat_stepped_path");
+  for (std::size_t s = 0; s < view.size("series_name"); ++s)
+    if (view.text("stepped_path", s) != path) return "stepped input";
+  return path;
+}
+
+// The first columns of each table: which rung. Values of different kinds (`mixed`) are shown as typed.
 struct RungColumns {
-  explicit RungColumns(const ResultView& of) : view(of), numbers(steps_numbers(of)) {
+  explicit RungColumns(const ResultView& of) : view(of), numbers(steps_numbers(of) && of.attribute("leat_stepped_units") != "mixed") {
     const std::string unit = view.attribute("leat_stepped_units");
-    columns = {{"series", ""}, {view.attribute("leat_stepped_path"), numbers && unit != "1" ? unit : ""}};
+    columns = {{"series", ""}, {stepped_name(view), numbers && unit != "1" ? unit : ""}};
   }
   Row row(std::size_t r) const { return {view.text("series", r), numbers ? Cell(view.at("stepped", {r})) : Cell(view.text("value_as_typed", r))}; }
 
@@ -63,10 +71,19 @@ bool is_metal(const ResultView& view, std::size_t component) {
   return false;
 }
 
+// Whether a component such as Cu(II) is a form of a metal that circuits were asked to report.
+bool is_reported(const ResultView& view, const std::string& component) {
+  const std::string symbol = component.substr(0, component.find('('));
+  const std::vector<std::string>& metals = view.labels("element");
+  return std::find(metals.begin(), metals.end(), symbol) != metals.end();
+}
+
+// Metals that are told: of circuits those they report, of beakers all.
 std::vector<std::size_t> metals_of(const ResultView& view) {
+  const bool circuits = view.attribute("leat_ladder_of") == "run";
   std::vector<std::size_t> metals;
   for (std::size_t j = 0; j < view.size("component"); ++j)
-    if (is_metal(view, j)) metals.push_back(j);
+    if (is_metal(view, j) && (!circuits || is_reported(view, view.labels("component")[j]))) metals.push_back(j);
   return metals;
 }
 
@@ -124,7 +141,7 @@ ResultTable distribution_table(const ResultView& view) {
       double most = 0;
       for (std::size_t r = 0; r < rungs_of(view); ++r) most = std::fmax(most, view.at("share", {r, j, i}));
       if (most < least_share) continue;
-      table.columns.push_back({view.labels("component")[j] + " as " + view.labels("species")[i], "%"});
+      table.columns.push_back({view.labels("species")[i], "% of " + view.labels("component")[j]});
       for (std::size_t r = 0; r < rungs_of(view); ++r) table.rows[r].push_back(percent(view.at("share", {r, j, i})));
     }
   if (table.columns.size() == first.columns.size()) table.rows.clear();

@@ -17,11 +17,14 @@ a name of a value, the value, its unit (none for a pH) and the tolerance in the 
   dissolved.COMPONENT@STEP              all forms of it in the liquor                                  [mol/L, mol]
   free.SPECIES@STEP                     molality of one species                                        [mol/kg]
   formed.MINERAL@STEP                   solid present                                                  [g, mol]
+  recovery.X@rung N   extraction.X@rung N   ph@rung N   dissolved.COMPONENT@rung N   of a ladder       [%, -, mol/L]
+  recovery.X@case N   ph.VESSEL@case N      a watched value of a campaign's case                       [%, -]
 """
 import glob
 import os
 import re
 import shutil
+import sqlite3
 import subprocess
 import sys
 import tempfile
@@ -125,7 +128,7 @@ class Results:
     def __init__(self, path):
         with h5py.File(path, "r") as file:
             self.data = {name: data[()] for name, data in file.items()}
-            self.is_run = file.attrs["leat_kind"].decode() == "run"
+            self.kind = file.attrs["leat_kind"].decode()
 
     def labels(self, axis):
         return [one.decode() for one in self.data[axis]]
@@ -137,8 +140,13 @@ class Results:
 
     def row(self, moment):
         """Row of a step's name, or of a stored time such as `48 h`."""
-        if not self.is_run:
+        if self.kind == "beaker":
             return self.index("step_name", moment)
+        if self.kind == "ladder":
+            rung = re.fullmatch(r"rung (\d+)", moment)
+            if not rung or not 1 <= int(rung.group(1)) <= len(self.data["rung"]):
+                raise BadExpectation(f"'{moment}' is no rung of 1 to {len(self.data['rung'])}; write for example @rung 3")
+            return int(rung.group(1)) - 1
         hours = re.fullmatch(r"([.\d]+) h", moment)
         near = numpy.flatnonzero(numpy.isclose(self.data["time"], float(hours.group(1)))) if hours else []
         if len(near) == 0:
@@ -150,10 +158,18 @@ class Results:
         word, _, rest = what.partition(".")
         if (word, unit) not in FACTORS:
             raise BadExpectation(f"'{word}' in '{unit}' is not read; there is {', '.join(f'{w} [{u}]' for w, u in FACTORS)}")
-        number = self.of_run(word, rest, moment) if self.is_run else self.of_beaker(word, rest, moment, unit)
-        return FACTORS[word, unit] * float(number)
+        reader = {"run": self.of_run, "beaker": self.of_beaker, "ladder": self.of_ladder}[self.kind]
+        return FACTORS[word, unit] * float(reader(word, rest, moment, unit))
 
-    def of_run(self, word, rest, moment):
+    def of_ladder(self, word, rest, moment, unit):
+        axes = {"recovery": "element", "extraction": "element", "dissolved": "component"}
+        if word == "ph" and not rest:
+            return self.data["ph"][self.row(moment)]
+        if word not in axes or unit == "mol":
+            raise BadExpectation(f"'{word}' in '{unit}' is not read from ladders")
+        return self.data[word][self.row(moment), self.index(axes[word], rest)]
+
+    def of_run(self, word, rest, moment, _):
         if word == "ph":
             return self.data["ph"][self.row(moment) if moment else -1, self.index("unit", rest)]
         if word not in ("recovery", "extraction"):
@@ -178,7 +194,6 @@ class Results:
             return amount * self.molar_mass(rest) if unit == "g" else amount
         raise BadExpectation(f"'{word}' is read from runs only")
 
-
     def molar_mass(self, mineral):
         """g/mol, from the formula that stands alone on the left of its solubility reaction."""
         reaction = self.data["constant_reaction"][self.index("constant", mineral)].decode()
@@ -186,6 +201,25 @@ class Results:
         with open(os.path.join(support.TREE, "models", "data", "atomic_weights.yaml"), encoding="utf-8") as file:
             weights = {one["element"]: float(one["weight"].split()[0]) for one in yaml.safe_load(file)["atomic_weights"]}
         return sum(count * weights[element] for element, count in atoms.items())
+
+
+class Ledger:
+    """What a campaign watched, as the names of expectations see it."""
+
+    def __init__(self, path):
+        with sqlite3.connect(f"file:{path}?mode=ro", uri=True) as ledger:
+            self.values = {(name, number): value for name, number, value in ledger.execute("SELECT watched, number, value FROM results")}
+
+    def value(self, name, unit):
+        what, _, moment = name.partition("@case ")
+        word = what.partition(".")[0]
+        if (word, unit) not in FACTORS or not moment.isdigit() or self.values.get((what, int(moment))) is None:
+            raise BadExpectation(f"'{name}' in '{unit}' is not watched; write for example recovery.Ag@case 3 in %")
+        return FACTORS[word, unit] * self.values[what, int(moment)]
+
+
+# What a kind of file leaves, and how it is read.
+OUTCOMES = {"flowsheet": (".h5", Results), "beaker": (".h5", Results), "ladder": (".ladder.h5", Results), "campaign": (".ledger", Ledger)}
 
 
 def head_lines(path, word):
@@ -223,7 +257,8 @@ class Examples(InACopy):
                 self.assertEqual(done.returncode, 0, done.stderr.decode("utf-8", "replace"))
                 expected = head_lines(path, "Expect")
                 self.assertTrue(expected, "the head needs a line '# Expect:'")
-                results = Results(os.path.join(self.copy.folder, "outputs", name[:-len(".yaml")] + ".h5"))
+                ending, reader = OUTCOMES[re.search(r"^kind:\s*(\w+)", support.read_text(path), re.M).group(1)]
+                results = reader(os.path.join(self.copy.folder, "outputs", name[:-len(".yaml")] + ending))
                 wrong = [why for why in (compare(results, line) for line in expected) if why]
                 self.assertEqual(wrong, [])
 
@@ -233,7 +268,7 @@ class Grammar(unittest.TestCase):
 
     def setUp(self):
         self.results = Results.__new__(Results)
-        self.results.is_run = True
+        self.results.kind = "run"
         self.results.data = {"element": [b"Ag"], "family": [b"ammine"], "unit": [b"L.1"], "time": numpy.array([0.0, 1.0]),
                              "steady_recovery": numpy.array([0.842]), "steady_recovery_by_family": numpy.array([[0.8]]),
                              "recovery": numpy.array([[0.1], [0.2]]), "ph": numpy.array([[9.0], [10.0]])}
@@ -248,6 +283,17 @@ class Grammar(unittest.TestCase):
                      "recovery.Ag = 0.842 within 0.002", "ph.L.2 = 10 within 0.1", "ph.L.1@7 h = 10 within 0.1", "grade.Ag = 84.2 % within 0.2",
                      "recovery.Ag = 84.2 % within 0", "recovery.Ag = 84.2 % within 100"):
             self.assertIsNotNone(compare(self.results, line), line)
+
+    def test_ladder(self):
+        ladder = Results.__new__(Results)
+        ladder.kind = "ladder"
+        ladder.data = {"rung": numpy.array([1.0, 2.0]), "element": [b"Ag"], "component": [b"Ag(I)"], "recovery": numpy.array([[0.5], [0.9]]),
+                       "ph": numpy.array([9.0, 10.0]), "dissolved": numpy.array([[10.0], [20.0]])}
+        for line in ("recovery.Ag@rung 2 = 90 % within 0.1", "ph@rung 1 = 9.0 within 0.1", "dissolved.Ag(I)@rung 2 = 0.02 mol/L within 0.001"):
+            self.assertIsNone(compare(ladder, line), line)
+        for line in ("recovery.Ag@rung 1 = 90 % within 0.1", "recovery.Ag@rung 3 = 90 % within 0.1", "recovery.Ag@rung 0 = 90 % within 0.1", "recovery.Ag = 90 % within 0.1",
+                     "ph.L.1@rung 1 = 9.0 within 0.1", "dissolved.Au(I)@rung 2 = 0.02 mol/L within 0.001"):
+            self.assertIsNotNone(compare(ladder, line), line)
 
 
 if __name__ == "__main__":

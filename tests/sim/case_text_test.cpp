@@ -173,7 +173,7 @@ TEST(CaseText, randomReplacementsReadBackAndLeaveTheRest) {
     Diagnostics unused;
     for (const std::string& path : paths_of(text))
       if (file.has(path, {}, unused)) paths.push_back(path);
-    ASSERT_GT(paths.size(), 5u) << name;
+    ASSERT_GT(paths.size(), 3u) << name;
     for (int round = 0; round < 300; ++round) {
       std::set<std::string> taken;
       Inputs inputs;

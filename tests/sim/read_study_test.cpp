@@ -217,7 +217,7 @@ TEST_F(StudyFiles, laddersThatAreRefused) {
   }
   Diagnostics diagnostics;
   EXPECT_FALSE(read_ladder("leat: 1\nkind: campaign\n", "x.yaml", diagnostics));
-  EXPECT_NE(told(diagnostics).find("use leat campaign"), std::string::npos) << told(diagnostics);
+  EXPECT_NE(told(diagnostics).find("Use leat campaign"), std::string::npos) << told(diagnostics);
   EXPECT_EQ(diagnostics.faults().size(), 1u);
 }
 

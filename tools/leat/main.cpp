@@ -1,6 +1,5 @@
 #include <CLI/CLI.hpp>
 #include <fcntl.h>
-#include <fmt/format.h>
 #include <unistd.h>
 
 #include <algorithm>
@@ -73,11 +72,11 @@ void add_study_verbs(CLI::App& app, Words& words, std::vector<Verb>& verbs) {
   verbs.push_back({report, &words.report, [&] { return report_verb(words.report); }});
 }
 
-// Closed standard streams are held by what cannot be used: no file that is opened later can take their place.
+// Closed standard streams are held, stdout by what cannot be written: no file that is opened later can take their place.
 void hold_standard_streams() {
   for (const int stream : {STDIN_FILENO, STDOUT_FILENO, STDERR_FILENO})
     if (fcntl(stream, F_GETFD) == -1) {
-      const int held = open("/dev/null", stream == STDIN_FILENO ? O_WRONLY : O_RDONLY);
+      const int held = open("/dev/null", stream == STDIN_FILENO ? O_WRONLY : stream == STDOUT_FILENO ? O_RDONLY : O_RDWR);
       if (held >= 0 && held != stream) dup2(held, stream);
     }
 }
@@ -89,7 +88,7 @@ int say_usage(const CLI::App& app, const CLI::ParseError& error, int count, char
   const int code = asked ? Exit::done : Exit::usage;
   const bool json = std::any_of(typed, typed + count, [](const char* word) { return std::string(word) == "--json"; });
   if (!json) {
-    fmt::print(stderr, "{}", err.str());
+    tell_text(err.str());
     return put_out(out.str(), code);
   }
   Answer answer;

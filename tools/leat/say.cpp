@@ -42,16 +42,24 @@ std::string csv_text(const Answer& answer, const std::string& name) {
 }
 
 void tell_people(const Answer& answer, const Manner& manner) {
-  for (const Diagnostic& caution : answer.remarks) fmt::print(stderr, "caution: {}\n", to_string(caution));
-  for (const Diagnostic& fault : answer.faults) fmt::print(stderr, "{}\n", to_string(fault));
+  for (const Diagnostic& caution : answer.remarks) tell("caution: {}\n", to_string(caution));
+  for (const Diagnostic& fault : answer.faults) tell("{}\n", to_string(fault));
   if (!answer.faults.empty())
-    fmt::print(stderr, "{}: {} fault{}; nothing was calculated or written\n", answer.file, answer.faults.size(), answer.faults.size() == 1 ? "" : "s");
-  if (!answer.failure.empty()) fmt::print(stderr, "{}{}{}\n", answer.file, answer.file.empty() ? "" : ": ", answer.failure);
+    tell("{}: {} fault{}; nothing was calculated or written\n", answer.file, answer.faults.size(), answer.faults.size() == 1 ? "" : "s");
+  if (!answer.failure.empty()) tell("{}{}{}\n", answer.file, answer.file.empty() ? "" : ": ", answer.failure);
   if (manner.csv.empty()) return;
-  for (const std::string& caution : answer.cautions) fmt::print(stderr, "caution: {}\n", caution);
+  for (const std::string& caution : answer.cautions) tell("caution: {}\n", caution);
 }
 
 }  // namespace
+
+void tell_text(const std::string& text) {
+  for (std::size_t done = 0; done < text.size();) {
+    const ssize_t count = write(STDERR_FILENO, text.data() + done, text.size() - done);
+    if (count < 0 && errno != EINTR) return;  // nobody is left to be told
+    if (count > 0) done += static_cast<std::size_t>(count);
+  }
+}
 
 std::string answer_text(const Answer& answer) {
   if (answer.lines.empty() && answer.tables.empty()) return {};
@@ -76,7 +84,7 @@ int put_out(const std::string& text, int exit_code) {
     } else if (errno == EPIPE) {
       return exit_code;  // the reader has seen enough
     } else if (errno != EINTR) {
-      fmt::print(stderr, "stdout: not written: {}\n", std::strerror(errno));
+      tell("stdout: not written: {}\n", std::strerror(errno));
       return Exit::machine_trouble;
     }
   }
@@ -109,7 +117,7 @@ bool take_findings(const Diagnostics& diagnostics, Answer& answer) {
 Progress::Progress(std::string what) : what_(std::move(what)), terminal_(isatty(STDERR_FILENO) != 0) {}
 
 Progress::~Progress() {
-  if (shown_) fmt::print(stderr, "\n");
+  if (shown_) tell("\n");
 }
 
 void Progress::show(double share) { say(fmt::format("{:3.0f} %", 100 * share)); }
@@ -117,7 +125,7 @@ void Progress::show(double share) { say(fmt::format("{:3.0f} %", 100 * share)); 
 void Progress::say(const std::string& text) {
   if (!terminal_) return;
   shown_ = true;
-  fmt::print(stderr, "\r{} {}", what_, text);
+  tell("\r{} {}", what_, text);
 }
 
 }  // namespace leat

@@ -4,7 +4,10 @@
 //   csv:   one table, or all of them, each behind a line `# NAME: heading`; cautions go to stderr
 // Faults of the input and failures stand on stderr in all three manners.
 #pragma once
+#include <fmt/format.h>
+
 #include <string>
+#include <utility>
 #include <vector>
 
 #include "models/core/diagnostics.hpp"
@@ -21,6 +24,13 @@ struct Manner {
 // Says an answer on stdout, faults and failures on stderr too, and gives its exit code; machine_trouble where stdout cannot
 // be written. A reader that has gone away (leat ... | head) is no trouble.
 int say(const Answer& answer, const Manner& manner);
+
+// A message for people on stderr; trouble with it is no trouble (fmt::print would throw).
+void tell_text(const std::string& text);
+template <class... Values>
+void tell(fmt::format_string<Values...> text, Values&&... values) {
+  tell_text(fmt::format(text, std::forward<Values>(values)...));
+}
 
 // Writes to stdout as it is: the given exit code, or machine_trouble.
 int put_out(const std::string& text, int exit_code);

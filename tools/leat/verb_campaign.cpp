@@ -66,14 +66,14 @@ class Teller {
   void tell(const CampaignProgress& at) {
     if (at.total == 0) return;
     const double rate = at.seconds > 0 ? at.finished_now / at.seconds : 0;
-    std::string text = fmt::format("{} of {} cases, {} not done", at.finished, at.total, at.failed);
+    std::string text = fmt::format("{} of {} cases, {} failed", at.finished, at.total, at.failed);
     if (rate > 0) text += fmt::format(", {:.3g} a second, {} left", rate, duration((at.total - at.finished) / rate));
     if (isatty(STDERR_FILENO) != 0) return terminal_.say(fmt::format("{:<76}", text));
     const int tenth = 10 * at.finished / at.total;
     if (tenth_ >= 0 && tenth == tenth_ && at.seconds - told_at_ < 600) return;
     tenth_ = tenth;
     told_at_ = at.seconds;
-    fmt::print(stderr, "campaign {}\n", text);
+    tell_text(fmt::format("campaign {}\n", text));
   }
 
  private:
@@ -120,7 +120,8 @@ void add_values(Row& row, const CampaignCase& one) {
 }
 
 ResultTable ranking_table(const CampaignResult& campaign) {
-  ResultTable table{"ranking", fmt::format("Leading cases by {}, {} first", campaign.rank_by, campaign.largest_first ? "largest" : "smallest"), {{"case", ""}}, {}, ""};
+  const std::string order = campaign.rank_by.empty() ? "number" : fmt::format("{}, {} first", campaign.rank_by, campaign.largest_first ? "largest" : "smallest");
+  ResultTable table{"ranking", "Leading cases by " + order, {{"case", ""}}, {}, ""};
   add_columns(table, campaign);
   for (const CampaignCase* one : ranked(campaign)) {
     if (table.rows.size() == leading) break;

@@ -32,7 +32,13 @@ function labelAxis(labels, across, width) {
   };
 }
 
-// One value axis more than needed keeps a chart of constant values from being a line on its frame.
+// Markers tell lines apart; along a long line only some are shown, of each series at other places.
+function sparse(count, index) {
+  if (count <= 24) return 7;
+  const every = Math.ceil(count / 9);
+  return (_, point) => (point.dataIndex % every === Math.floor(((index % 4) + 0.5) * every / 4) ? 7 : 0);
+}
+
 function seriesOption(chart, one, index, count) {
   const form = look(one, index);
   const isLine = chart.kind === "lines" || one.right;
@@ -41,7 +47,7 @@ function seriesOption(chart, one, index, count) {
   const shared = { name: one.name, animation: false, yAxisIndex: one.right ? 1 : 0, data: points, emphasis: { focus: "series" } };
   if (isLine)
     return {
-      ...shared, type: "line", symbol: form.marker, symbolSize: 7, showSymbol: one.values.length <= 24, connectNulls: false, lineStyle: { color: form.colour, width: 2, type: form.dash.length ? form.dash : "solid" },
+      ...shared, type: "line", symbol: form.marker, symbolSize: sparse(points.length, index), showSymbol: true, connectNulls: false, lineStyle: { color: form.colour, width: 2, type: form.dash.length ? form.dash : "solid" },
       itemStyle: { color: form.colour, borderWidth: 1.5 }, z: one.right ? 5 : 3,
     };
   if (chart.kind === "areas")
@@ -158,7 +164,7 @@ export function place(holder, chart) {
     if (chart.kind === "spans") drawing.setOption(spanOption(chart, view, width), true);
     else {
       const made = legend(view.series, chart.kind, state.hidden, (name) => redraw(name));
-      if (view.series.length > 1) legendPlace.replaceChildren(made);
+      if (view.series.length > 1 || chart.kind === "areas" || chart.kind === "bars") legendPlace.replaceChildren(made);
       else legendPlace.replaceChildren();
       if (kept !== undefined) [...made.querySelectorAll("button")].find((button) => button.textContent === kept)?.focus();
       drawing.setOption(option(chart, view, state.hidden, width), true);

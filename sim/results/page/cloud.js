@@ -1,5 +1,6 @@
 // The scatter of a campaign: two results against each other, coloured by an input, all three chosen by the reader.
-import { colour, element, escaped, figures, tick } from "./figures.js";
+import { colour, drawn, element, escaped, figures, tick } from "./figures.js";
+import { marker } from "./legend.js";
 import { plate, started, text } from "./charts.js";
 
 const shapes = ["circle", "rect", "triangle", "diamond", "emptyCircle", "emptyRect", "emptyTriangle", "emptyDiamond"];
@@ -10,9 +11,10 @@ function select(label, names, chosen, changed) {
   return element("label", { class: "choose" }, `${label} `, box);
 }
 
-// Distinct values of an input in the order in which they first come; more than eight are put into eight neighbouring groups.
+// Distinct values of an input, numbers by size, others in the order in which they first come; more than eight are put into eight neighbouring groups.
 function groups(values) {
   const distinct = [...new Set(values)];
+  if (distinct.every((value) => Number.isFinite(parseFloat(value)))) distinct.sort((a, b) => parseFloat(a) - parseFloat(b));
   const per = Math.ceil(distinct.length / 8);
   const group = new Map(distinct.map((value, i) => [value, Math.floor(i / per)]));
   const names = [];
@@ -48,9 +50,8 @@ export function placeCloud(holder, cloud) {
     const grouped = input ? groups(input.values) : { names: ["cases"], of: x.values.map(() => 0) };
     unitLine.replaceChildren(element("span", {}, y.title));
     key.replaceChildren(...grouped.names.map((name, i) => {
-      const dot = element("span", { class: `dot shape-${shapes[i]}`, "aria-hidden": "true" });
-      dot.style.setProperty("--tone", colour(`series-${i + 1}`));
-      return element("li", {}, dot, name);
+      const dot = drawn("svg", { width: 12, height: 12, viewBox: "9 0 12 12", "aria-hidden": "true" }, marker({ marker: shapes[i], colour: colour(`series-${i + 1}`) }));
+      return element("li", {}, dot, ` ${name}`);
     }));
     drawing.setOption({
       textStyle: text(), grid: { left: 6, right: 20, top: 12, bottom: 26, containLabel: true },

@@ -1,13 +1,14 @@
 // The flow diagram: ELK finds the places and the ways of the streams, this file draws them.
 import ELK from "elkjs/lib/elk.bundled.js";
 import { drawn, element, figures } from "./figures.js";
+import { placeLabels } from "./labels.js";
 import { flag, stub, symbolOf } from "./symbols.js";
 
 const rules = {
   "elk.algorithm": "layered", "elk.direction": "RIGHT", "elk.edgeRouting": "ORTHOGONAL", "elk.layered.cycleBreaking.strategy": "MODEL_ORDER",
-  "elk.layered.considerModelOrder.strategy": "NODES_AND_EDGES", "elk.layered.nodePlacement.strategy": "NETWORK_SIMPLEX", "elk.layered.spacing.nodeNodeBetweenLayers": "34",
-  "elk.spacing.nodeNode": "30", "elk.spacing.edgeNode": "20", "elk.spacing.edgeEdge": "14", "elk.layered.spacing.edgeEdgeBetweenLayers": "14",
-  "elk.layered.spacing.edgeNodeBetweenLayers": "16", "elk.spacing.edgeLabel": "3", "elk.padding": "[top=14,left=6,bottom=14,right=6]", "elk.layered.thoroughness": "20",
+  "elk.layered.considerModelOrder.strategy": "NODES_AND_EDGES", "elk.layered.nodePlacement.strategy": "NETWORK_SIMPLEX", "elk.layered.spacing.nodeNodeBetweenLayers": "84",
+  "elk.spacing.nodeNode": "46", "elk.spacing.edgeNode": "24", "elk.spacing.edgeEdge": "18", "elk.layered.spacing.edgeEdgeBetweenLayers": "14",
+  "elk.layered.spacing.edgeNodeBetweenLayers": "16", "elk.padding": "[top=16,left=6,bottom=30,right=6]", "elk.layered.thoroughness": "20",
 };
 const lineHeight = 14;
 let ruler;
@@ -25,12 +26,13 @@ function linesOf(stream, flow, chosen) {
   const lines = [];
   for (const column of flow.always) {
     const value = stream.numbers[column];
-    if (value !== null && !(column === flow.solids && value < 5e-4)) lines.push(`${figures(value, 3)} ${flow.columns[column].unit}`);
+    if (value === 0 && column !== flow.solids) lines.push(`${figures(stream.numbers[flow.mass], 3)} ${flow.columns[flow.mass].unit}`);
+    else if (value !== null && !(column === flow.solids && value < 5e-4)) lines.push(`${figures(value, 3)} ${flow.columns[column].unit}`);
   }
   if (chosen !== null) {
-    const { name, unit } = flow.columns[chosen];
+    const { unit } = flow.columns[chosen];
     const value = stream.numbers[chosen];
-    if (value !== null) lines.push(`${flow.columns[chosen].short || name} ${figures(value, 3)}${unit === "1" || unit === "" ? "" : ` ${unit}`}`);
+    if (value !== null && !(value === 0 && stream.from === "")) lines.push(unit === "1" ? `${flow.columns[chosen].short} ${figures(value, 3)}` : `${figures(value, 3)} ${unit}`);
   }
   return lines;
 }
@@ -76,14 +78,12 @@ function graphOf(flow, chosen) {
   for (const stream of flow.streams) if (stream.to === "") children.push(flagNode(leaveId(stream), stream.leaves || stream.name));
   for (const stream of flow.streams) if (stream.to === "" && stream.from === "") children.push(flagNode(feedId(stream), stream.name));
   const edges = flow.streams.map((stream) => {
-    const lines = linesOf(stream, flow, chosen);
-    const label = { text: lines.join("\n"), width: Math.max(...lines.map((line) => textWidth(line)), 1), height: lines.length * lineHeight + 2, layoutOptions: { "elk.edgeLabels.placement": "CENTER" } };
     return {
       id: `stream:${stream.name}`, sources: [stream.from === "" ? feedId(stream) : `out:${stream.name}`], targets: [stream.to === "" ? leaveId(stream) : `in:${stream.name}`],
-      labels: lines.length ? [label] : [], stream, lines,
+      stream, lines: linesOf(stream, flow, chosen),
     };
   });
-  return { id: "root", layoutOptions: rules, children, edges };
+  return { id: "root", layoutOptions: { ...rules }, children, edges };
 }
 
 function rounded(points) {
@@ -112,14 +112,13 @@ function ways(stream) {
 }
 
 function drawEdge(edge, flow, centres, show) {
-  const { stream } = edge;
-  const points = edge.sections.flatMap((section) => [section.startPoint, ...(section.bendPoints ?? []), section.endPoint]);
+  const { stream, points, label } = edge;
   const back = stream.from !== "" && stream.to !== "" && centres.get(stream.to) < centres.get(stream.from);
   const solids = stream.numbers[flow.solids] > 5e-4;
   const d = rounded(points);
   const group = drawn("g", { class: `stream${back ? " back" : ""}${solids ? " pulp" : ""}`, tabindex: 0, role: "img", "aria-label": spoken(stream, flow), "data-stream": stream.name });
   group.append(drawn("path", { d, class: "reach" }), drawn("path", { d, class: "line", "marker-end": back ? "url(#tip-back)" : "url(#tip)" }));
-  for (const label of edge.labels ?? []) {
+  if (label) {
     const text = drawn("text", { x: label.x + label.width / 2, y: label.y + lineHeight - 3, "text-anchor": "middle", class: "numbers" });
     edge.lines.forEach((line, i) => text.append(drawn("tspan", { x: label.x + label.width / 2, dy: i === 0 ? 0 : lineHeight }, line)));
     group.append(text);
@@ -156,6 +155,36 @@ function tips() {
   return drawn("defs", {}, tip("tip", "tip"), tip("tip-back", "tip back"));
 }
 
+// Figures go where they cover least; a node's block holds its name too.
+function label(placed) {
+  const blocks = placed.children.map((node) => {
+    const above = node.labels?.[0]?.height ?? 0;
+    const wide = Math.max(node.width, node.labels?.[0]?.width ?? 0);
+    return { x: node.x + node.width / 2 - wide / 2 - 3, y: node.y - above, width: wide + 6, height: node.height + above + 10 };
+  });
+  for (const edge of placed.edges) {
+    edge.points = edge.sections.flatMap((section) => [section.startPoint, ...(section.bendPoints ?? []), section.endPoint]);
+    edge.width = edge.lines.length ? Math.max(...edge.lines.map((line) => textWidth(line))) : 0;
+    edge.height = edge.lines.length * lineHeight;
+  }
+  placeLabels(placed.edges, blocks, placed).forEach((place, i) => (placed.edges[i].label = place));
+}
+
+// In one row if that is not much wider than the frame; else broken into rows, like lines of text.
+async function layout(elk, flow, chosen, width) {
+  const target = Math.max(width, 860);
+  let placed = await elk.layout(graphOf(flow, chosen));
+  for (const aspect of [3.4, 2.8, 2.3, 1.9, 1.5, 1.2, 0.9]) {
+    if (placed.width <= 1.2 * target) break;
+    const graph = graphOf(flow, chosen);
+    Object.assign(graph.layoutOptions, { "elk.layered.wrapping.strategy": "MULTI_EDGE", "elk.aspectRatio": String(aspect), "elk.layered.wrapping.additionalEdgeSpacing": "18" });
+    const wrapped = await elk.layout(graph);
+    if (wrapped.edges.every((edge) => edge.sections)) placed = wrapped;
+  }
+  label(placed);
+  return placed;
+}
+
 function picture(placed, flow, show) {
   const svg = drawn("svg", { viewBox: `0 0 ${Math.ceil(placed.width)} ${Math.ceil(placed.height)}`, role: "group", "aria-label": "Flow diagram" });
   svg.append(tips());
@@ -187,7 +216,7 @@ window.leatDiagram = async (holder, flow) => {
     zoom.svg.setAttribute("width", Math.round(zoom.width * zoom.scale));
   };
   const fit = () => {
-    zoom.scale = Math.min(1.15, Math.max(0.68, (frame.clientWidth - 4) / zoom.width));
+    zoom.scale = Math.min(1.1, Math.max(0.8, (frame.clientWidth - 4) / zoom.width));
     apply();
   };
   for (const [label, text, change] of [["Smaller", "−", () => (zoom.scale = Math.max(0.3, zoom.scale / 1.2))], ["Larger", "+", () => (zoom.scale = Math.min(3, zoom.scale * 1.2))], ["Fit the width", "whole width", () => (zoom.scale = (frame.clientWidth - 4) / zoom.width)]]) {
@@ -198,10 +227,13 @@ window.leatDiagram = async (holder, flow) => {
     });
     controls.append(button);
   }
-  const key = element("p", { class: "key" }, element("span", { class: "pulp" }, "with solids"), element("span", { class: "liquor" }, "liquor alone"), element("span", { class: "back" }, "back to an earlier unit"));
+  const figuresKey = element("em", {});
+  const key = element("p", { class: "key" }, element("span", { class: "pulp" }, "with solids"), element("span", { class: "liquor" }, "liquor alone"), element("span", { class: "back" }, "back to an earlier unit"), figuresKey);
   holder.append(controls, key, frame, panel);
   async function redraw(first) {
-    const placed = await elk.layout(graphOf(flow, choice.value === "" ? null : Number(choice.value)));
+    const chosen = choice.value === "" ? null : Number(choice.value);
+    const placed = await layout(elk, flow, chosen, frame.clientWidth);
+    figuresKey.textContent = `Figures: ${[...flow.always, ...(chosen === null ? [] : [chosen])].map((column) => flow.columns[column].name).join(", ")}; mass where nothing but a dry reagent flows.`;
     zoom.svg = picture(placed, flow, show);
     zoom.width = placed.width;
     frame.replaceChildren(zoom.svg);

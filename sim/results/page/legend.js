@@ -39,7 +39,7 @@ function swatch(form, kind) {
   return picture;
 }
 
-function marker(form) {
+export function marker(form) {
   const hollow = form.marker.startsWith("empty");
   const ink = { fill: hollow ? colour("paper") : form.colour, stroke: form.colour, "stroke-width": 1.5 };
   const shape = form.marker.replace("empty", "").toLowerCase();

@@ -52,6 +52,6 @@ function makeSearchable(table) {
 export function placeTables() {
   for (const table of document.querySelectorAll("table.sortable")) {
     makeSortable(table);
-    if (table.tBodies[0].rows.length > 8) makeSearchable(table);
+    if (table.tBodies[0].rows.length > 24) makeSearchable(table);
   }
 }
