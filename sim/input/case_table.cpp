@@ -25,10 +25,14 @@ class TableReader {
       if (!one_row(row)) return std::nullopt;
       const bool empty = row.size() == 1 && row[0].text.empty();
       if (empty) continue;
-      if (table.header.empty())
+      if (table.header.empty()) {
         table.header = std::move(row);
-      else if (fits(row, table.header))
-        table.rows.push_back(std::move(row));
+        const TableCell& first = table.header[0];
+        if (first.text.find(';') == std::string::npos) continue;
+        fault({first.line, first.column}, "a ';' in the header; cells are parted by commas");
+        return std::nullopt;
+      }
+      if (fits(row, table.header)) table.rows.push_back(std::move(row));
       if (table.rows.size() > most_cases) {
         fault({line_, 1}, fmt::format("the table has more than {} rows; split it", most_cases));
         break;
@@ -52,7 +56,7 @@ class TableReader {
 
   bool fits(const std::vector<TableCell>& row, const std::vector<TableCell>& header) {
     if (row.size() != header.size()) {
-      fault({row[0].line, row[0].column}, fmt::format("{} cells in this row; the header has {}", row.size(), header.size()));
+      fault({row[0].line, row[0].column}, fmt::format("{} cell{} in this row; the header has {}", row.size(), row.size() == 1 ? "" : "s", header.size()));
       return false;
     }
     for (std::size_t k = 0; k < row.size(); ++k)

@@ -155,9 +155,9 @@ bool CaseText::has(std::string_view path, const Place& from, Diagnostics& diagno
     return false;
   };
   if (!way.rest.empty()) {
-    const std::string where = way.followed.empty() ? parts_->file : fmt::format("'{}' of {}", way.followed, parts_->file);
+    const std::string where = way.followed.empty() ? "its top" : fmt::format("'{}'", way.followed);
     const std::string missing = shown_text(way.rest.substr(0, way.rest.size() > 1 ? way.rest.find('.') : 1));
-    if (way.node->is_scalar()) return refuse(Code::unknown_name, fmt::format("goes on behind {}, which is a single value; end the path there", where));
+    if (way.node->is_scalar()) return refuse(Code::unknown_name, fmt::format("goes on behind {}, which is a single value in {}; end the path there", where, parts_->file));
     const std::vector<std::string> words = words_of(*way.node);
     const std::string near = near_word(way.rest, words);
     return refuse(Code::unknown_name, fmt::format("is not in {}: {} has no '{}'{} It has: {}. What is varied must stand in the file: give it a value there first",

@@ -6,6 +6,11 @@
 #include "sim/results/page_sections.hpp"
 
 namespace leat {
+namespace {
+
+std::string without_folder(const std::string& path) { return path.substr(path.rfind('/') == std::string::npos ? 0 : path.rfind('/') + 1); }
+
+}  // namespace
 
 bool page_available() { return !page_scripts().charts.empty(); }
 
@@ -26,7 +31,8 @@ std::string page_of(const ResultSet& results) {
   }
   if (kind == "ladder") {
     add_ladder(page, view);
-    return page.finish(head_of(view, "Ladder", from + ", stepping " + view.attribute("leat_stepped_path")));
+    const bool alone = view.size("series_name") < 2;
+    return page.finish(head_of(view, "Ladder", from + (alone ? ", stepping " + view.attribute("leat_stepped_path") : ", series side by side")));
   }
   throw std::logic_error("there is no page of results of the kind '" + kind + "'");
 }
@@ -35,8 +41,8 @@ std::string page_of(const CampaignResult& campaign) {
   PageBuilder page;
   add_campaign(page, campaign);
   const std::string part = campaign.shard.empty() ? "" : ", part " + campaign.shard;
-  return page.finish({campaign.title.empty() ? campaign.file : campaign.title, "Campaign", campaign.program,
-                      "From " + campaign.file + ", varying " + campaign.base_file + part});
+  return page.finish({campaign.title.empty() ? without_folder(campaign.file) : campaign.title, "Campaign", campaign.program,
+                      "From " + without_folder(campaign.file) + ", varying " + without_folder(campaign.base_file) + part});
 }
 
 }  // namespace leat

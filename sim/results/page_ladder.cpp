@@ -103,6 +103,7 @@ class LadderCharts {
       if (!is_metal(view_, c) && !holds_shares(c)) continue;
       keep(chart, side_by_side(view_.labels("component")[c], {"mol/L", "mol/L", false, false, {}, {}}, [&](std::size_t r) { return view_.at("dissolved", {r, c}) / 1000; }));
     }
+    if (rungs_.series.size() == 1 && chart.views.size() > 1) join(chart);
     for (ChartView& one : chart.views) spread(one);
     if (view_.has("dissolved")) page_.chart(chart);
   }

@@ -59,8 +59,8 @@ class Browser:
             if "method" in told:
                 self.events.append(told)
 
-    def open(self, path, **settings):
-        return Page(self, path, **settings)
+    def open(self, path, *settings, **others):
+        return Page(self, path, *settings, **others)
 
     def close(self):
         try:
@@ -114,7 +114,6 @@ class Page:
 
     def trouble(self):
         """Everything the page complained about: exceptions, console errors, refused content."""
-        self.value("1") if self.session else None
         told = []
         for event in self.mine():
             name, details = event["method"], event["params"]

@@ -174,7 +174,7 @@ TEST(CaseText, randomReplacementsReadBackAndLeaveTheRest) {
     for (const std::string& path : paths_of(text))
       if (file.has(path, {}, unused)) paths.push_back(path);
     ASSERT_GT(paths.size(), 3u) << name;
-    for (int round = 0; round < 300; ++round) {
+    for (int round = 0; round < 120; ++round) {
       std::set<std::string> taken;
       Inputs inputs;
       for (unsigned n = 1 + random() % 4; n > 0; --n) {

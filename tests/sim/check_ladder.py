@@ -222,11 +222,12 @@ class Trends(Climbed):
     def test_silver_chloride_in_ammonia_rises_with_it(self):
         """Without chloride of its own: dissolved silver = sqrt(K) times free ammonia, a straight line in what is free."""
         case = support.read_text(STRONG).replace(", (NH4)2SO4: 0.2 mol/L, NaCl: 0.02 mol/L", "").replace(", tenorite: 80 g", "").replace(", tenorite]", "]")
-        rungs = self.ladder(self.put("case.yaml", case), "--vary", "beaker.liquor.NH3: 0.25 mol/L to 2 mol/L in 8 points")
+        case = case.replace("davies", "ideal")
+        rungs = self.ladder(self.put("case.yaml", case), "--vary", "beaker.liquor.NH3: 0.1 mol/L to 1 mol/L in 10 points")
         silver = self.of(rungs, "dissolved", "component", "Ag(I)")
         free = self.of(rungs, "dissolved", "component", "NH3") - 2 * silver
         self.assertTrue((numpy.diff(silver) > 0).all())
-        self.assertLess(abs(silver / free / (silver / free)[3] - 1).max(), 0.06)
+        self.assertLess(abs(silver / free / (silver / free)[3] - 1).max(), 0.03)
 
     def test_cyanide_takes_two_a_silver(self):
         rungs = self.ladder(THREE)

@@ -306,7 +306,7 @@ TEST(CaseTable, faultsHaveTheirPlace) {
   EXPECT_NE(table_fault(std::string("a,b\n1,\0\n", 8)).find("NUL"), std::string::npos);
   EXPECT_NE(table_fault("").find("empty"), std::string::npos);
   EXPECT_NE(table_fault("a,b\n").find("no row"), std::string::npos);
-  EXPECT_NE(table_fault("a;b\n1;2;3\n1,2\n").find("the header has 1"), std::string::npos);
+  EXPECT_NE(table_fault("a;b\n1;2\n").find("t.csv:1:1: a ';' in the header"), std::string::npos);
 }
 
 TEST(CaseTable, randomBytesNeverCrash) {

@@ -94,6 +94,7 @@ int report_results(const ReportArguments& arguments, const std::string& out, Ans
   if (!knows_csv(arguments.manner, names, answer)) return say(answer, arguments.manner);
   if (!write_page(made.html, "page", out, answer)) return say(answer, arguments.manner);
   answer.title = made.title;
+  answer.lines.push_back("One HTML page, complete in itself: a browser opens it, no network is needed.");
   if (arguments.manner.json || !arguments.manner.csv.empty()) answer.tables = made.tables;
   std::istringstream lines(made.cautions);
   for (std::string line; std::getline(lines, line);) answer.cautions.push_back(line);
@@ -133,7 +134,10 @@ int report_ledger(const ReportArguments& arguments, const std::string& out, Answ
   if (!campaign) return refused(answer, arguments.manner, Exit::input_faults, fault);
   if (!knows_csv(arguments.manner, {}, answer)) return say(answer, arguments.manner);
   answer.title = campaign->title;
-  if (write_case_pages(*campaign, arguments, out, answer)) write_page(page_of(*campaign), "page", out, answer);
+  if (write_case_pages(*campaign, arguments, out, answer) && write_page(page_of(*campaign), "page", out, answer)) {
+    answer.lines.push_back("One HTML page, complete in itself: a browser opens it, no network is needed.");
+    if (answer.written.size() > 1) answer.lines.push_back(std::to_string(answer.written.size() - 1) + " leading cases have pages of their own, linked from it.");
+  }
   return say(answer, arguments.manner);
 }
 

@@ -43,7 +43,7 @@ function seriesOption(chart, one, index, count) {
   const form = look(one, index);
   const isLine = chart.kind === "lines" || one.right;
   const stacked = !isLine && chart.kind !== "columns";
-  const points = one.x ? one.values.map((value, i) => [one.x[i], value]) : chart.x.numbers ? one.values.map((value, i) => [chart.x.numbers[i], value]) : one.values;
+  const points = one.points ?? (one.x ? one.values.map((value, i) => [one.x[i], value]) : chart.x.numbers ? one.values.map((value, i) => [chart.x.numbers[i], value]) : one.values);
   const shared = { name: one.name, animation: false, yAxisIndex: one.right ? 1 : 0, data: points, emphasis: { focus: "series" } };
   if (isLine)
     return {
@@ -52,8 +52,8 @@ function seriesOption(chart, one, index, count) {
     };
   if (chart.kind === "areas")
     return {
-      ...shared, type: "line", stack: "all", symbol: "none", lineStyle: { color: form.colour, width: 1 }, itemStyle: { color: form.colour, decal: decal(form.pattern) },
-      areaStyle: { color: form.colour, opacity: 0.88, decal: decal(form.pattern) },
+      ...shared, type: "line", symbol: "none", z: 3 + (count - index) * 0.01, lineStyle: { color: colour("paper"), width: 1 }, itemStyle: { color: form.colour, decal: decal(form.pattern) },
+      areaStyle: { color: form.colour, opacity: 1, decal: decal(form.pattern) }, emphasis: { disabled: true },
     };
   return {
     ...shared, yAxisIndex: chart.across ? 0 : shared.yAxisIndex, type: "bar", stack: stacked ? "all" : undefined, barMaxWidth: 46, barMinWidth: 2,
@@ -69,7 +69,7 @@ function tooltip(chart, view) {
       const many = Array.isArray(points) ? points : [points];
       const at = chart.x.labels ? many[0].name : `${figures(many[0].axisValue ?? many[0].value[0])} ${chart.x.unit}`;
       const rows = many.map((point) => {
-        const value = Array.isArray(point.value) ? point.value[1] : point.value;
+        const value = Array.isArray(point.value) ? point.value[point.value.length - 1] : point.value;
         const series = view.series.find((one) => one.name === point.seriesName);
         return `<tr><td>${point.marker ?? ""}${escaped(point.seriesName)}</td><td class="n">${escaped(figures(value))} ${escaped(series?.right ? view.right.unit : view.y.unit)}</td></tr>`;
       });
@@ -78,8 +78,24 @@ function tooltip(chart, view) {
   };
 }
 
+// Areas over numbers are stacked here: the library would stack along the wrong axis. Each is drawn down to zero, the lower ones in front.
+// A point is x, sum, own value.
+function stackedUp(chart, shown) {
+  const sums = new Map();
+  return shown.map(({ one, index }) => {
+    const at = one.x ?? chart.x.numbers;
+    const points = one.values.map((value, i) => {
+      const sum = (sums.get(at[i]) ?? 0) + (value ?? 0);
+      sums.set(at[i], sum);
+      return [at[i], value === null ? null : sum, value];
+    });
+    return { one: { ...one, points }, index };
+  });
+}
+
 function option(chart, view, hidden, width) {
-  const shown = view.series.map((one, index) => ({ one, index })).filter(({ one }) => !hidden.has(one.name));
+  let shown = view.series.map((one, index) => ({ one, index })).filter(({ one }) => !hidden.has(one.name));
+  if (chart.kind === "areas") shown = stackedUp(chart, shown);
   const labelled = chart.x.labels ? labelAxis(chart.x.labels, chart.across, width) : { ...valueAxis({ ...chart.x, fit: true }, false), min: chart.x.min ?? "dataMin", max: chart.x.max ?? "dataMax" };
   const vertical = [valueAxis(view.y)];
   if (view.right) vertical.push({ ...valueAxis(view.right, false), position: "right" });

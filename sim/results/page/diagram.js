@@ -2,7 +2,7 @@
 import ELK from "elkjs/lib/elk.bundled.js";
 import { drawn, element, figures } from "./figures.js";
 import { placeLabels } from "./labels.js";
-import { flag, stub, symbolOf } from "./symbols.js";
+import { flag, heightOf, stub, symbolOf } from "./symbols.js";
 
 const rules = {
   "elk.algorithm": "layered", "elk.direction": "RIGHT", "elk.edgeRouting": "ORTHOGONAL", "elk.layered.cycleBreaking.strategy": "MODEL_ORDER",
@@ -41,17 +41,18 @@ function linesOf(stream, flow, chosen) {
 function nodeOf(operation, flow) {
   const symbol = symbolOf(operation.kind);
   const label = { text: operation.name, width: Math.max(textWidth(operation.name, true), 10), height: 16 + symbol.top };
+  const taken = flow.streams.filter((stream) => stream.to === operation.name);
+  const given = flow.streams.filter((stream) => stream.from === operation.name);
   const node = {
-    id: `op:${operation.name}`, width: symbol.width, height: symbol.height, labels: [label], ports: [],
+    id: `op:${operation.name}`, width: symbol.width, height: heightOf(symbol, Math.max(taken.length, given.length)), labels: [label], ports: [],
     layoutOptions: { "elk.nodeLabels.placement": "OUTSIDE V_TOP H_CENTER", "elk.portConstraints": symbol.outlets ? "FIXED_POS" : "FIXED_SIDE", "elk.spacing.labelNode": "0" },
   };
-  const taken = flow.streams.filter((stream) => stream.to === operation.name);
   taken.forEach((stream, i) => {
     const port = { id: `in:${stream.name}`, width: 0, height: 0, layoutOptions: { "elk.port.side": "WEST" } };
     if (symbol.outlets) Object.assign(port, { x: 0, y: ((i + 1) * symbol.inletHeight * 1.3) / (taken.length + 1) });
     node.ports.push(port);
   });
-  for (const stream of flow.streams.filter((one) => one.from === operation.name)) {
+  for (const stream of given) {
     const port = { id: `out:${stream.name}`, width: 0, height: 0, layoutOptions: { "elk.port.side": "EAST" } };
     if (symbol.outlets) {
       const under = stream.name.endsWith(".underflow");
@@ -111,9 +112,9 @@ function ways(stream) {
   return `${stream.from === "" ? "fed" : `from ${stream.from}`} ${stream.to === "" ? `, leaves${stream.leaves ? ` as ${stream.leaves}` : ""}` : `to ${stream.to}`}`.replace(" ,", ",");
 }
 
-function drawEdge(edge, flow, centres, show) {
+function drawEdge(edge, flow, order, show) {
   const { stream, points, label } = edge;
-  const back = stream.from !== "" && stream.to !== "" && centres.get(stream.to) < centres.get(stream.from);
+  const back = stream.from !== "" && stream.to !== "" && order.get(stream.to) <= order.get(stream.from);
   const solids = stream.numbers[flow.solids] > 5e-4;
   const d = rounded(points);
   const group = drawn("g", { class: `stream${back ? " back" : ""}${solids ? " pulp" : ""}`, tabindex: 0, role: "img", "aria-label": spoken(stream, flow), "data-stream": stream.name });
@@ -140,9 +141,9 @@ function drawNode(node, flow, show) {
   const said = facts.map((fact) => `${fact.name} ${figures(fact.value)} ${fact.unit === "1" ? "" : fact.unit}`).join(", ");
   for (const [key, value] of Object.entries({ class: "operation", tabindex: 0, role: "img", "data-operation": operation.name, "aria-label": `${operation.kind} ${operation.name}${said ? `: ${said}` : ""}` }))
     group.setAttribute(key, value);
-  group.append(...symbol.draw());
+  group.append(...symbol.draw(node.height));
   for (const port of node.ports ?? []) {
-    const made = stub(symbol, port.id.startsWith("in:") ? "left" : "right", port.y);
+    const made = stub(symbol, node.height, port.id.startsWith("in:") ? "left" : "right", port.y);
     if (made) group.append(made);
   }
   group.append(drawn("text", { x: node.width / 2, y: -symbol.top - 4, "text-anchor": "middle", class: "name" }, operation.name));
@@ -167,7 +168,10 @@ function label(placed) {
     edge.width = edge.lines.length ? Math.max(...edge.lines.map((line) => textWidth(line))) : 0;
     edge.height = edge.lines.length * lineHeight;
   }
-  placeLabels(placed.edges, blocks, placed).forEach((place, i) => (placed.edges[i].label = place));
+  placeLabels(placed.edges, blocks, placed).forEach((place, i) => {
+    placed.edges[i].label = place;
+    if (place) placed.height = Math.max(placed.height, place.y + place.height + 8);
+  });
 }
 
 // In one row if that is not much wider than the frame; else broken into rows, like lines of text.
@@ -188,8 +192,8 @@ async function layout(elk, flow, chosen, width) {
 function picture(placed, flow, show) {
   const svg = drawn("svg", { viewBox: `0 0 ${Math.ceil(placed.width)} ${Math.ceil(placed.height)}`, role: "group", "aria-label": "Flow diagram" });
   svg.append(tips());
-  const centres = new Map(placed.children.filter((node) => node.id.startsWith("op:")).map((node) => [node.id.slice(3), node.x + node.width / 2]));
-  const streams = placed.edges.map((edge) => drawEdge(edge, flow, centres, show));
+  const order = new Map(flow.operations.map((operation, i) => [operation.name, i]));
+  const streams = placed.edges.map((edge) => drawEdge(edge, flow, order, show));
   svg.append(...streams, ...placed.children.map((node) => drawNode(node, flow, show)));
   return svg;
 }
