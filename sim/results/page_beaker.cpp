@@ -30,8 +30,11 @@ std::vector<double> by_step(const ResultView& view, const std::function<double(s
 }
 
 void add_state_charts(PageBuilder& page, const ResultView& view) {
-  PageChart ph = step_chart(view, "ph-by-step", "pH and liquor, step by step", "pH (left) and the volume of the liquor (right) at the end of each step.");
-  ph.views = {{"", {}, ChartAxis{"liquor, L", "L", false, false, 0.0, {}},
+  PageChart ph =
+      step_chart(view, "ph-by-step", "pH and liquor, step by step", "pH (left) and the volume of the liquor (right) at the end of each step.");
+  ph.views = {{"",
+               {},
+               ChartAxis{"liquor, L", "L", false, false, 0.0, {}},
                {{"pH", by_step(view, [&](std::size_t k) { return view.at("ph", {k}); })},
                 {"liquor", by_step(view, [&](std::size_t k) { return 1000 * view.at("liquor_volume", {k}); }), -1, "", "", true}}}};
   ph.views.front().y = ph_axis(ph.views.front().series);
@@ -42,7 +45,9 @@ void add_state_charts(PageBuilder& page, const ResultView& view) {
   solids.kind = ChartKind::bars;
   ChartView amounts{"", {weighed ? "g" : "mol", weighed ? "g" : "mol", false, false, 0.0, {}}, {}, {}};
   for (std::size_t m = 0; m < view.size("mineral"); ++m) {
-    ChartSeries one{view.labels("mineral")[m], by_step(view, [&](std::size_t k) { return view.at("formed", {k, m}) * (weighed ? 1000 * view.at("mineral_mass", {m}) : 1); })};
+    ChartSeries one{view.labels("mineral")[m], by_step(view, [&](std::size_t k) {
+                      return view.at("formed", {k, m}) * (weighed ? 1000 * view.at("mineral_mass", {m}) : 1);
+                    })};
     if (std::any_of(one.values.begin(), one.values.end(), [](double value) { return value > 0; })) amounts.series.push_back(std::move(one));
   }
   solids.views = {amounts};
@@ -50,7 +55,9 @@ void add_state_charts(PageBuilder& page, const ResultView& view) {
 }
 
 void add_dissolved(PageBuilder& page, const ResultView& view) {
-  PageChart chart = step_chart(view, "dissolved-by-step", "Dissolved, all forms together", "Concentration in the liquor at the end of each step, on a logarithmic axis; a metal that falls has come down as a solid.");
+  PageChart chart =
+      step_chart(view, "dissolved-by-step", "Dissolved, all forms together",
+                 "Concentration in the liquor at the end of each step, on a logarithmic axis; a metal that falls has come down as a solid.");
   ChartView one{"", {"mol/L, logarithmic", "mol/L", true}, {}, {}};
   for (std::size_t c = 0; c < view.size("component"); ++c) {
     if (!of_interest(view, c)) continue;
@@ -65,14 +72,16 @@ void add_dissolved(PageBuilder& page, const ResultView& view) {
 }
 
 void add_saturation(PageBuilder& page, const ResultView& view) {
-  PageChart chart = step_chart(view, "saturation-by-step", "Saturation index, step by step", "0: saturated; above 0 the solid could form, below 0 it would dissolve. Indices below -10 are left out.");
+  PageChart chart = step_chart(view, "saturation-by-step", "Saturation index, step by step",
+                               "0: saturated; above 0 the solid could form, below 0 it would dissolve. Indices below -10 are left out.");
   ChartView one{"", {"log10 of ion activity product over constant", "", false, true}, {}, {}};
   for (std::size_t m = 0; m < view.size("mineral"); ++m) {
     ChartSeries series{view.labels("mineral")[m], by_step(view, [&](std::size_t k) {
                          const double index = view.at("saturation_index", {k, m});
                          return index > -10 ? index : std::nan("");
                        })};
-    if (std::any_of(series.values.begin(), series.values.end(), [](double value) { return std::isfinite(value); })) one.series.push_back(std::move(series));
+    if (std::any_of(series.values.begin(), series.values.end(), [](double value) { return std::isfinite(value); }))
+      one.series.push_back(std::move(series));
   }
   chart.views = {one};
   page.chart(chart);
@@ -93,11 +102,16 @@ void add_beaker(PageBuilder& page, const ResultView& view) {
   shelf.take(page, "dissolved");
 
   page.section("holders", "Who holds what");
-  PageChart chart = step_chart(view, "who-holds-what", "How the species share each dissolved total", "All dissolved forms together are 100 % in each step.");
+  PageChart chart =
+      step_chart(view, "who-holds-what", "How the species share each dissolved total", "All dissolved forms together are 100 % in each step.");
   chart.kind = ChartKind::bars;
   chart.choose = "Of";
-  chart.views = sharing_views(view, view.size("step"), [&](std::size_t step, std::size_t species) { return view.at("molality", {step, species}); },
-                              [&](std::size_t c) { return of_interest(view, c); });
+  chart.views = sharing_views(
+      view, view.size("step"),
+      [&](std::size_t step, std::size_t species) {
+        return view.at("molality", {step, species});
+      },
+      [&](std::size_t c) { return of_interest(view, c); });
   // Metals first.
   std::stable_partition(chart.views.begin(), chart.views.end(), [&](const ChartView& one) {
     const auto& names = view.labels("component");

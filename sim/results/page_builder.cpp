@@ -44,8 +44,10 @@ ResultTable numbers_of(PageChart chart) {
     for (std::size_t r = 0; r < rows; ++r) {
       std::vector<TextTableWriter::Cell> cells;
       if (several) cells.emplace_back(view.name);
-      if (chart.labels.empty()) cells.emplace_back(at[r]);
-      else cells.emplace_back(chart.labels[r]);
+      if (chart.labels.empty())
+        cells.emplace_back(at[r]);
+      else
+        cells.emplace_back(chart.labels[r]);
       for (const std::string& name : names) {
         const auto series = std::find_if(view.series.begin(), view.series.end(), [&](const ChartSeries& one) { return one.name == name; });
         double value = std::nan("");
@@ -110,8 +112,9 @@ void PageBuilder::cloud(const CloudChart& chart, std::string_view title, std::st
 }
 
 void PageBuilder::flow(const FlowDiagram& diagram) {
-  body_ += "<div class=\"diagram\" data-diagram></div>\n<p class=\"unscripted\">The diagram is drawn by the page's scripts, which do not run here; "
-           "the streams table says where each stream comes from and goes to.</p>\n";
+  body_ +=
+      "<div class=\"diagram\" data-diagram></div>\n<p class=\"unscripted\">The diagram is drawn by the page's scripts, which do not run here; "
+      "the streams table says where each stream comes from and goes to.</p>\n";
   diagrams_.push_back(diagram);
 }
 
@@ -119,20 +122,26 @@ std::string PageBuilder::finish(const Head& head) const {
   const PageScripts scripts = page_scripts();
   std::string page =
       "<!DOCTYPE html>\n<html lang=\"en\">\n<head>\n<meta charset=\"utf-8\">\n"
-      "<meta http-equiv=\"Content-Security-Policy\" content=\"default-src 'none'; script-src 'unsafe-inline'; style-src 'unsafe-inline'; img-src data: blob:; "
+      "<meta http-equiv=\"Content-Security-Policy\" content=\"default-src 'none'; script-src 'unsafe-inline'; style-src 'unsafe-inline'; img-src "
+      "data: blob:; "
       "base-uri 'none'; form-action 'none'\">\n<meta name=\"viewport\" content=\"width=device-width, initial-scale=1\">\n"
-      "<meta name=\"generator\" content=\"" + escaped(head.program) + "\">\n<title>" + escaped(head.title) + "</title>\n<style>";
+      "<meta name=\"generator\" content=\"" +
+      escaped(head.program) + "\">\n<title>" + escaped(head.title) + "</title>\n<style>";
   page += scripts.style;
-  page += "</style>\n</head>\n<body>\n<a class=\"skip\" href=\"#main\">Skip to the content</a>\n<header class=\"top\">\n<p class=\"line\"><span>" + escaped(head.kind) +
-          "</span><button type=\"button\" class=\"plain\" id=\"theme\" hidden>Light or dark</button></p>\n<h1>" + escaped(head.title) + "</h1>\n<p class=\"about\">" +
-          escaped(head.about) + "</p>\n</header>\n<div class=\"layout\">\n<nav class=\"contents\" aria-label=\"Contents\"><ol>\n";
+  page += "</style>\n</head>\n<body>\n<a class=\"skip\" href=\"#main\">Skip to the content</a>\n<header class=\"top\">\n<p class=\"line\"><span>" +
+          escaped(head.kind) + "</span><button type=\"button\" class=\"plain\" id=\"theme\" hidden>Light or dark</button></p>\n<h1>" +
+          escaped(head.title) + "</h1>\n<p class=\"about\">" + escaped(head.about) +
+          "</p>\n</header>\n<div class=\"layout\">\n<nav class=\"contents\" aria-label=\"Contents\"><ol>\n";
   for (const auto& [id, title] : contents_) page += "<li><a href=\"#" + id + "\">" + escaped(title) + "</a></li>\n";
-  page += "</ol></nav>\n<main id=\"main\">\n" + body_ + (contents_.empty() ? "" : "</section>\n") + "</main>\n</div>\n<footer>\n<p>Written by " + escaped(head.program) +
+  page += "</ol></nav>\n<main id=\"main\">\n" + body_ + (contents_.empty() ? "" : "</section>\n") + "</main>\n</div>\n<footer>\n<p>Written by " +
+          escaped(head.program) +
           ". Complete in itself: it asks nothing of a network. The whole of the results stands in the results file.</p>\n"
           "<details><summary>Notices of the software inside this page</summary>\n<pre>";
-  page += escaped(scripts.notices) + "</pre></details>\n</footer>\n<script type=\"application/json\" id=\"page-data\">" + page_data(charts_, clouds_, diagrams_) + "</script>\n";
+  page += escaped(scripts.notices) + "</pre></details>\n</footer>\n<script type=\"application/json\" id=\"page-data\">" +
+          page_data(charts_, clouds_, diagrams_) + "</script>\n";
   if (!diagrams_.empty()) page += "<script type=\"text/plain\" id=\"packed-diagram\">" + std::string(scripts.diagram) + "</script>\n";
-  page += "<script type=\"text/plain\" id=\"packed-charts\">" + std::string(scripts.charts) + "</script>\n<script>" + std::string(scripts.loader) + "</script>\n</body>\n</html>\n";
+  page += "<script type=\"text/plain\" id=\"packed-charts\">" + std::string(scripts.charts) + "</script>\n<script>" + std::string(scripts.loader) +
+          "</script>\n</body>\n</html>\n";
   return page;
 }
 

@@ -25,7 +25,8 @@ void add_counts(PageBuilder& page, const CampaignResult& campaign, const std::ve
   std::map<CaseStatus, int> counts;
   for (const CampaignCase& one : campaign.cases) ++counts[one.status];
   std::string html = fmt::format("<dl class=\"heads\">\n<div><dt>cases</dt><dd>{}</dd></div>\n", campaign.cases.size());
-  for (const auto& [status, count] : counts) html += fmt::format("<div><dt>{}</dt><dd data-status=\"{}\">{}</dd></div>\n", escaped(said(status)), escaped(to_string(status)), count);
+  for (const auto& [status, count] : counts)
+    html += fmt::format("<div><dt>{}</dt><dd data-status=\"{}\">{}</dd></div>\n", escaped(said(status)), escaped(to_string(status)), count);
   page.html(html + "</dl>\n");
   if (order.empty()) {
     page.paragraph("No case is done.");
@@ -37,7 +38,8 @@ void add_counts(PageBuilder& page, const CampaignResult& campaign, const std::ve
     inputs += (inputs.empty() ? "" : ", ") + campaign.paths[k] + " " + best.inputs[k];
   const std::size_t by = rank_column(campaign);
   if (by < campaign.watch.size() && by < best.watched.size() && std::isfinite(best.watched[by]))
-    page.paragraph(fmt::format("Case {} leads with the {} {}: {}{}.", best.number, campaign.largest_first ? "largest" : "smallest", campaign.rank_by, significant(best.watched[by]),
+    page.paragraph(fmt::format("Case {} leads with the {} {}: {}{}.", best.number, campaign.largest_first ? "largest" : "smallest", campaign.rank_by,
+                               significant(best.watched[by]),
                                campaign.watch_units[by] == "1" || campaign.watch_units[by].empty() ? "" : " " + campaign.watch_units[by]) +
                    (inputs.empty() ? "" : " It has " + inputs + "."));
 }
@@ -45,10 +47,14 @@ void add_counts(PageBuilder& page, const CampaignResult& campaign, const std::ve
 void add_ranking(PageBuilder& page, const CampaignResult& campaign, const std::vector<std::size_t>& order) {
   if (order.empty()) return;
   page.section("ranking", "Ranking");
-  ResultTable table{"ranking", fmt::format("Cases by {}, {} first", campaign.rank_by, campaign.largest_first ? "largest" : "smallest"), {{"case", ""}, {"rank", ""}}, {}, ""};
+  ResultTable table{"ranking",
+                    fmt::format("Cases by {}, {} first", campaign.rank_by, campaign.largest_first ? "largest" : "smallest"),
+                    {{"case", ""}, {"rank", ""}},
+                    {},
+                    ""};
   for (std::size_t k = 0; k < campaign.watch.size(); ++k) table.columns.push_back({campaign.watch[k], campaign.watch_units[k]});
   for (const std::string& path : campaign.paths) table.columns.push_back({path, ""});
-  PageTable shown{table, true, true, {}, most_case_rows};
+  PageTable shown{table, true, true, {}, most_case_rows, true};
   for (std::size_t place = 0; place < order.size() && place < most_case_rows; ++place) {
     const CampaignCase& one = campaign.cases[order[place]];
     std::vector<TextTableWriter::Cell> row = {fmt::format("{}", one.number), fmt::format("{}", place + 1)};
@@ -57,7 +63,8 @@ void add_ranking(PageBuilder& page, const CampaignResult& campaign, const std::v
     shown.table.rows.push_back(std::move(row));
     shown.links.push_back(one.page);
   }
-  if (order.size() > most_case_rows) shown.table.note = fmt::format("The leading {} of {} cases that are done; the ledger holds all.", most_case_rows, order.size());
+  if (order.size() > most_case_rows)
+    shown.table.note = fmt::format("The leading {} of {} cases that are done; the ledger holds all.", most_case_rows, order.size());
   page.paragraph("Press a heading to sort. A case whose number is a link has its own page.");
   page.table(shown);
 }
@@ -71,17 +78,23 @@ void add_cloud(PageBuilder& page, const CampaignResult& campaign, const std::vec
   const std::vector<std::size_t> points = picked(order.size(), most_points);
   for (std::size_t point : points) cloud.numbers.push_back(campaign.cases[order[point]].number);
   for (std::size_t k = 0; k < campaign.watch.size(); ++k) {
-    CloudChart::Result result{campaign.watch[k], with_unit(campaign.watch[k], campaign.watch_units[k]), campaign.watch_units[k] == "1" ? "" : campaign.watch_units[k], {}};
-    for (std::size_t point : points) result.values.push_back(k < campaign.cases[order[point]].watched.size() ? campaign.cases[order[point]].watched[k] : std::nan(""));
+    CloudChart::Result result{
+        campaign.watch[k], with_unit(campaign.watch[k], campaign.watch_units[k]), campaign.watch_units[k] == "1" ? "" : campaign.watch_units[k], {}};
+    for (std::size_t point : points)
+      result.values.push_back(k < campaign.cases[order[point]].watched.size() ? campaign.cases[order[point]].watched[k] : std::nan(""));
     cloud.results.push_back(std::move(result));
   }
   for (std::size_t k = 0; k < campaign.paths.size(); ++k) {
     CloudChart::Input input{campaign.paths[k], {}};
-    for (std::size_t point : points) input.values.push_back(k < campaign.cases[order[point]].inputs.size() ? campaign.cases[order[point]].inputs[k] : std::string());
+    for (std::size_t point : points)
+      input.values.push_back(k < campaign.cases[order[point]].inputs.size() ? campaign.cases[order[point]].inputs[k] : std::string());
     cloud.inputs.push_back(std::move(input));
   }
-  std::string reading = "A point is a case that is done; choose what stands across and up, and by which input the points are told apart. Its numbers stand in the ranking table.";
-  if (points.size() < order.size()) reading += fmt::format(" {} of {} cases are drawn, evenly picked along the ranking.", points.size(), order.size());
+  std::string reading =
+      "A point is a case that is done; choose what stands across and up, and by which input the points are told apart. Its numbers stand in the "
+      "ranking table.";
+  if (points.size() < order.size())
+    reading += fmt::format(" {} of {} cases are drawn, evenly picked along the ranking.", points.size(), order.size());
   page.cloud(cloud, "Results of the cases against each other", reading);
 }
 
@@ -138,7 +151,8 @@ void add_effects(PageBuilder& page, const CampaignResult& campaign) {
     for (const CampaignCase& one : campaign.cases) {
       if (input >= one.inputs.size()) continue;
       if (std::find(values.begin(), values.end(), one.inputs[input]) == values.end()) values.push_back(one.inputs[input]);
-      if (one.status == CaseStatus::done && by < one.watched.size() && std::isfinite(one.watched[by])) results[one.inputs[input]].push_back(one.watched[by]);
+      if (one.status == CaseStatus::done && by < one.watched.size() && std::isfinite(one.watched[by]))
+        results[one.inputs[input]].push_back(one.watched[by]);
     }
     if (values.size() < 2 || values.size() > most_values) continue;
     PageChart chart;
@@ -164,7 +178,8 @@ void add_effects(PageBuilder& page, const CampaignResult& campaign) {
   }
   if (charts.empty()) return;
   page.section("effects", "What each input does");
-  page.paragraph("Wide spans mean that the other inputs matter more than this one; a mean that moves from value to value is this input's own effect.");
+  page.paragraph(
+      "Wide spans mean that the other inputs matter more than this one; a mean that moves from value to value is this input's own effect.");
   page.html("<div class=\"multiples\">\n");
   for (const PageChart& chart : charts) page.chart(chart);
   page.html("</div>\n");
@@ -176,7 +191,8 @@ void add_campaign(PageBuilder& page, const CampaignResult& campaign) {
   add_counts(page, campaign, order);
   ResultTable meanings{"watched", "What is watched", {{"result", ""}, {"unit", ""}, {"meaning", ""}}, {}, ""};
   for (std::size_t k = 0; k < campaign.watch.size(); ++k)
-    meanings.rows.push_back({campaign.watch[k], campaign.watch_units[k] == "1" ? std::string() : campaign.watch_units[k], k < campaign.watch_meanings.size() ? campaign.watch_meanings[k] : std::string()});
+    meanings.rows.push_back({campaign.watch[k], campaign.watch_units[k] == "1" ? std::string() : campaign.watch_units[k],
+                             k < campaign.watch_meanings.size() ? campaign.watch_meanings[k] : std::string()});
   page.table({meanings, false, false, {}, most_rows});
   add_effects(page, campaign);
   add_cloud(page, campaign, order);

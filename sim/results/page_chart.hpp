@@ -12,7 +12,7 @@ struct ChartAxis {
   std::string unit = {};              // behind a single value
   bool logarithmic = false;
   bool fit = false;                   // need not begin at zero
-  std::optional<double> min = {}, max = {};
+  std::optional<double> min = {}, max = {}, step = {};
 };
 
 struct ChartSeries {

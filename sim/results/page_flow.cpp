@@ -19,8 +19,12 @@ FlowOperation operation_of(const ResultView& view, const Moment& now, std::size_
   if (found == vessels.end()) return made;
   const std::size_t u = static_cast<std::size_t>(found - vessels.begin());
   const double volume = now.at("pulp_volume", {u});
-  made.facts = {{"volume", "m³", volume}, {"residence time", "h", ratio(volume, now.at("outlet_flow", {u})) / hour}, {"temperature", "°C", now.at("temperature", {u}) - zero_celsius},
-                {"pH", "1", now.at("ph", {u})}, {"ionic strength", "mol/kg", now.at("ionic_strength", {u})}, {"solids", "%", 100 * now.at("solids_fraction", {u})}};
+  made.facts = {{"volume", "m³", volume},
+                {"residence time", "h", ratio(volume, now.at("outlet_flow", {u})) / hour},
+                {"temperature", "°C", now.at("temperature", {u}) - zero_celsius},
+                {"pH", "1", now.at("ph", {u})},
+                {"ionic strength", "mol/kg", now.at("ionic_strength", {u})},
+                {"solids", "%", 100 * now.at("solids_fraction", {u})}};
   for (std::size_t m = 0; m < view.size("mineral"); ++m)
     if (const double formed = now.at("formed", {u, m}); formed > 0) made.facts.push_back({view.labels("mineral")[m] + " formed", "mol", formed});
   return made;
@@ -29,10 +33,16 @@ FlowOperation operation_of(const ResultView& view, const Moment& now, std::size_
 FlowStream stream_of(const ResultView& view, const Moment& now, std::size_t s) {
   FlowStream made{view.labels("stream")[s], view.text("stream_from", s), view.text("stream_to", s), view.text("stream_leaves_as", s), {}};
   const double liquor = now.at("stream_liquor_flow", {s}), solids = now.at("stream_solids_flow", {s});
-  made.numbers = {now.at("stream_pulp_flow", {s}) * hour, solids * hour / 1000, now.at("stream_mass_flow", {s}) * hour / 1000, liquor * hour, 100 * ratio(solids, now.at("stream_mass_flow", {s})), now.at("stream_ph", {s})};
+  made.numbers = {now.at("stream_pulp_flow", {s}) * hour,
+                  solids * hour / 1000,
+                  now.at("stream_mass_flow", {s}) * hour / 1000,
+                  liquor * hour,
+                  100 * ratio(solids, now.at("stream_mass_flow", {s})),
+                  now.at("stream_ph", {s})};
   for (std::size_t e = 0; e < view.size("element"); ++e) made.numbers.push_back(1000 * ratio(now.at("stream_metal_dissolved", {s, e}), liquor));
   for (std::size_t e = 0; e < view.size("element"); ++e)
-    made.numbers.push_back((now.at("stream_metal_dissolved", {s, e}) + now.at("stream_metal_undissolved", {s, e}) + now.at("stream_metal_formed", {s, e})) * hour);
+    made.numbers.push_back(
+        (now.at("stream_metal_dissolved", {s, e}) + now.at("stream_metal_undissolved", {s, e}) + now.at("stream_metal_formed", {s, e})) * hour);
   return made;
 }
 

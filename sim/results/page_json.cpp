@@ -39,6 +39,7 @@ Json axis_json(const ChartAxis& axis) {
   if (axis.fit) json["fit"] = true;
   if (axis.min) json["min"] = number(*axis.min);
   if (axis.max) json["max"] = number(*axis.max);
+  if (axis.step) json["step"] = number(*axis.step);
   return json;
 }
 
@@ -68,8 +69,10 @@ Json view_json(const PageChart& chart, const ChartView& view) {
 Json chart_json(const PageChart& chart) {
   const char* const kinds[] = {"lines", "areas", "bars", "columns", "spans"};
   Json json = {{"id", chart.id}, {"kind", kinds[static_cast<int>(chart.kind)]}, {"x", axis_json(chart.x)}, {"choose", word(chart.choose)}};
-  if (!chart.labels.empty()) json["x"]["labels"] = words(chart.labels);
-  else if (!chart.numbers.empty()) json["x"]["numbers"] = numbers(chart.numbers);
+  if (!chart.labels.empty())
+    json["x"]["labels"] = words(chart.labels);
+  else if (!chart.numbers.empty())
+    json["x"]["numbers"] = numbers(chart.numbers);
   if (chart.across) json["across"] = true;
   if (chart.height > 0) json["height"] = chart.height;
   json["views"] = Json::array();
@@ -86,7 +89,13 @@ Json cloud_json(const CloudChart& cloud) {
 }
 
 Json flow_json(const FlowDiagram& flow) {
-  Json json = {{"operations", Json::array()}, {"streams", Json::array()}, {"columns", Json::array()}, {"always", {0, 1}}, {"solids", 1}, {"mass", 2}, {"chosen", nullptr}};
+  Json json = {{"operations", Json::array()},
+               {"streams", Json::array()},
+               {"columns", Json::array()},
+               {"always", {0, 1}},
+               {"solids", 1},
+               {"mass", 2},
+               {"chosen", nullptr}};
   if (flow.chosen >= 0) json["chosen"] = flow.chosen;
   for (const FlowOperation& one : flow.operations) {
     Json facts = Json::array();
@@ -94,7 +103,11 @@ Json flow_json(const FlowDiagram& flow) {
     json["operations"].push_back({{"name", word(one.name)}, {"kind", word(one.kind)}, {"facts", facts}});
   }
   for (const FlowStream& one : flow.streams)
-    json["streams"].push_back({{"name", word(one.name)}, {"from", word(one.from)}, {"to", word(one.to)}, {"leaves", word(one.leaves_as)}, {"numbers", numbers(one.numbers)}});
+    json["streams"].push_back({{"name", word(one.name)},
+                               {"from", word(one.from)},
+                               {"to", word(one.to)},
+                               {"leaves", word(one.leaves_as)},
+                               {"numbers", numbers(one.numbers)}});
   for (std::size_t k = 0; k < flow.columns.size(); ++k)
     json["columns"].push_back({{"name", word(flow.columns[k].name)}, {"unit", word(flow.columns[k].unit)}, {"short", word(flow.shorts[k])}});
   return json;
@@ -109,8 +122,10 @@ std::string page_data(const std::vector<PageChart>& charts, const std::vector<Cl
   if (!diagrams.empty()) json["flow"] = flow_json(diagrams.front());
   std::string text;
   for (char c : json.dump()) {
-    if (c == '<') text += "\\u003c";
-    else text += c;
+    if (c == '<')
+      text += "\\u003c";
+    else
+      text += c;
   }
   return text;
 }

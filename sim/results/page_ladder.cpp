@@ -15,7 +15,7 @@ struct Rungs {
     std::vector<std::size_t> rungs;
   };
   std::vector<Series> series;
-  bool quantities = true;        // stepped values are numbers; else their texts stand along x
+  bool quantities = true;  // stepped values are numbers; else their texts stand along x
   ChartAxis x;
 };
 
@@ -62,7 +62,8 @@ class LadderCharts {
     ChartSeries made{std::move(name), {}, look};
     for (std::size_t r : of.rungs) {
       const double here = value(r);
-      if (!rungs_.quantities) made.values.push_back(here);
+      if (!rungs_.quantities)
+        made.values.push_back(here);
       else if (std::isfinite(here)) {
         made.at.push_back(view_.at("stepped", {r}));
         made.values.push_back(here);
@@ -86,22 +87,31 @@ class LadderCharts {
         return;
       }
   }
-  std::string name_of(const Rungs::Series& series, const std::string& what) const { return rungs_.series.size() > 1 ? what + ", " + series.name : what; }
+  std::string name_of(const Rungs::Series& series, const std::string& what) const {
+    return rungs_.series.size() > 1 ? what + ", " + series.name : what;
+  }
 
   void recovery() {
-    PageChart chart = start("recovery-by-step", "Recovery against the stepped input", "Metal in the pregnant liquor over metal fed, at steady state; where a curve bends down, more of the input no longer pays.");
+    PageChart chart =
+        start("recovery-by-step", "Recovery against the stepped input",
+              "Metal in the pregnant liquor over metal fed, at steady state; where a curve bends down, more of the input no longer pays.");
     chart.choose = "Metal";
     for (std::size_t e = 0; e < view_.size("element"); ++e)
-      keep(chart, side_by_side(view_.labels("element")[e], {"% of metal fed", "%", false, false, 0.0, {}}, [&](std::size_t r) { return 100 * view_.at("recovery", {r, e}); }));
+      keep(chart, side_by_side(view_.labels("element")[e], {"% of metal fed", "%", false, false, 0.0, {}}, [&](std::size_t r) {
+             return 100 * view_.at("recovery", {r, e});
+           }));
     if (rungs_.series.size() == 1 && chart.views.size() > 1) join(chart);
     if (view_.has("recovery")) page_.chart(chart);
   }
   void dissolved() {
-    PageChart chart = start("dissolved-by-step", "Dissolved metal against the stepped input", "All dissolved forms of a metal together; a step where a solid is at its limit shows as a bend.");
+    PageChart chart = start("dissolved-by-step", "Dissolved metal against the stepped input",
+                            "All dissolved forms of a metal together; a step where a solid is at its limit shows as a bend.");
     chart.choose = "Metal";
     for (std::size_t c = 0; c < view_.size("component"); ++c) {
       if (!is_metal(view_, c) && !holds_shares(c)) continue;
-      keep(chart, side_by_side(view_.labels("component")[c], {"mol/L", "mol/L", false, false, {}, {}}, [&](std::size_t r) { return view_.at("dissolved", {r, c}) / 1000; }));
+      keep(chart, side_by_side(view_.labels("component")[c], {"mol/L", "mol/L", false, false, {}, {}}, [&](std::size_t r) {
+             return view_.at("dissolved", {r, c}) / 1000;
+           }));
     }
     if (rungs_.series.size() == 1 && chart.views.size() > 1) join(chart);
     for (ChartView& one : chart.views) spread(one);
@@ -110,7 +120,8 @@ class LadderCharts {
   void distribution() {
     constexpr double least = 0.001;
     constexpr std::size_t most = 8;
-    PageChart chart = start("distribution-by-step", "Distribution of each metal among its complexes", "All dissolved forms of a metal are 100 %: which complex carries it as the input is stepped.");
+    PageChart chart = start("distribution-by-step", "Distribution of each metal among its complexes",
+                            "All dissolved forms of a metal are 100 %: which complex carries it as the input is stepped.");
     chart.kind = rungs_.quantities ? ChartKind::areas : ChartKind::bars;
     chart.choose = "Metal";
     for (std::size_t c = 0; c < view_.size("component"); ++c)
@@ -145,17 +156,22 @@ class LadderCharts {
     keep(ph, side_by_side("", {"pH", ""}, [&](std::size_t r) { return view_.at("ph", {r}); }));
     for (ChartView& one : ph.views) one.y = ph_axis(one.series);
     page_.chart(ph);
-    PageChart solids = start("solids-by-step", "Solids formed against the stepped input", "Solids in equilibrium with the liquor; where one vanishes the liquor is no longer saturated with it.");
+    PageChart solids = start("solids-by-step", "Solids formed against the stepped input",
+                             "Solids in equilibrium with the liquor; where one vanishes the liquor is no longer saturated with it.");
     solids.choose = "Solid";
     for (std::size_t m = 0; m < view_.size("mineral"); ++m)
-      keep(solids, side_by_side(view_.labels("mineral")[m], {"mol per m3 of liquor", "mol/m3", false, false, 0.0, {}}, [&](std::size_t r) { return view_.at("formed", {r, m}); }));
+      keep(solids, side_by_side(view_.labels("mineral")[m], {"mol per m3 of liquor", "mol/m3", false, false, 0.0, {}}, [&](std::size_t r) {
+             return view_.at("formed", {r, m});
+           }));
     page_.chart(solids);
   }
   void reagents() {
     PageChart chart = start("reagents-by-step", "Use of reagents against the stepped input", "Reagent fed per mass of dry solids fed.");
     chart.choose = "Reagent";
     for (std::size_t s = 0; s < view_.size("stream"); ++s)
-      keep(chart, side_by_side(view_.labels("stream")[s], {"kg per t of solids", "kg/t", false, false, 0.0, {}}, [&](std::size_t r) { return 1000 * view_.at("reagent_consumption", {r, s}); }));
+      keep(chart, side_by_side(view_.labels("stream")[s], {"kg per t of solids", "kg/t", false, false, 0.0, {}}, [&](std::size_t r) {
+             return 1000 * view_.at("reagent_consumption", {r, s});
+           }));
     if (view_.has("reagent_consumption")) page_.chart(chart);
   }
 
@@ -210,7 +226,8 @@ void add_ladder(PageBuilder& page, const ResultView& view) {
   const std::size_t rungs = view.size("rung");
   std::size_t solved = 0;
   for (std::size_t r = 0; r < rungs; ++r) solved += view.text("status", r) == "solved" ? 1 : 0;
-  page.paragraph(solved == rungs ? fmt::format("All {} rungs are solved.", rungs) : fmt::format("{} of {} rungs are solved; why the others are not stands below.", solved, rungs));
+  page.paragraph(solved == rungs ? fmt::format("All {} rungs are solved.", rungs)
+                                 : fmt::format("{} of {} rungs are solved; why the others are not stands below.", solved, rungs));
   add_cautions(page, view);
   charts.recovery();
   charts.dissolved();

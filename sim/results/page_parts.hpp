@@ -22,10 +22,11 @@ std::vector<std::size_t> picked(std::size_t count, std::size_t most);
 
 struct PageTable {
   ResultTable table;
-  bool sortable = false;       // and searchable
+  bool sortable = false;
   bool tall = false;           // scrolls inside a box
   std::vector<std::string> links;  // of the first cell, a relative address a row; may be empty
   std::size_t most = most_rows;
+  bool searchable = false;
 };
 
 class PageBuilder {

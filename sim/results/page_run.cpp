@@ -15,8 +15,8 @@ void add_heads(PageBuilder& page, const ResultView& view, const Moment& now) {
   std::string html = "<dl class=\"heads\">\n";
   for (std::size_t e = 0; e < view.size("element"); ++e) {
     const double recovery = percent(now.at("recovery", {e})), extraction = percent(now.at("extraction", {e}));
-    html += fmt::format("<div><dt>{} recovered</dt><dd data-recovery=\"{}\">{} %<small>{} % extracted</small></dd></div>\n", escaped(view.labels("element")[e]),
-                        escaped(view.labels("element")[e]), significant(recovery), significant(extraction));
+    html += fmt::format("<div><dt>{} recovered</dt><dd data-recovery=\"{}\">{} %<small>{} % extracted</small></dd></div>\n",
+                        escaped(view.labels("element")[e]), escaped(view.labels("element")[e]), significant(recovery), significant(extraction));
   }
   page.html(html + "</dl>\n");
 }
@@ -26,8 +26,9 @@ void add_recovery_chart(PageBuilder& page, const ResultView& view, const Moment&
   PageChart chart;
   chart.id = "where-metal-goes";
   chart.title = "Where each metal goes, " + now.words();
-  chart.reading = "Each bar is all of a metal that the solids bring: what reaches " + view.attribute("leat_pregnant_liquor") +
-                  " by family of complexes, then what dissolves and leaves elsewhere, what comes down and leaves as formed solids, and what never dissolves.";
+  chart.reading =
+      "Each bar is all of a metal that the solids bring: what reaches " + view.attribute("leat_pregnant_liquor") +
+      " by family of complexes, then what dissolves and leaves elsewhere, what comes down and leaves as formed solids, and what never dissolves.";
   chart.kind = ChartKind::bars;
   chart.across = true;
   chart.x.title = "metal";
@@ -39,7 +40,8 @@ void add_recovery_chart(PageBuilder& page, const ResultView& view, const Moment&
     for (std::size_t e = 0; e < metals; ++e) series.values.push_back(percent(now.at("recovery_by_family", {e, f})));
     if (std::any_of(series.values.begin(), series.values.end(), [](double value) { return value > 0.01; })) parts.series.push_back(series);
   }
-  ChartSeries lost{"dissolved, leaving elsewhere", {}, -1, "rest-lost"}, formed{"formed solids, leaving", {}, -1, "rest-formed"}, left{"never dissolved", {}, -1, "rest-left"};
+  ChartSeries lost{"dissolved, leaving elsewhere", {}, -1, "rest-lost"}, formed{"formed solids, leaving", {}, -1, "rest-formed"},
+      left{"never dissolved", {}, -1, "rest-left"};
   for (std::size_t e = 0; e < metals; ++e) {
     const double extraction = now.at("extraction", {e}), down = now.at("formed_leaving", {e});
     lost.values.push_back(percent(std::max(0.0, extraction - now.at("recovery", {e}) - down)));
@@ -70,7 +72,8 @@ void add_holders(PageBuilder& page, const ResultView& view, const Moment& now) {
   PageChart ligands;
   ligands.id = "who-holds-the-ligand";
   ligands.title = "Who holds the ligand, stage by stage";
-  ligands.reading = "All of a ligand dissolved in a vessel is 100 %: free, protonated, or bound to a metal; what the metals bind is not there for the next one.";
+  ligands.reading =
+      "All of a ligand dissolved in a vessel is 100 %: free, protonated, or bound to a metal; what the metals bind is not there for the next one.";
   ligands.kind = ChartKind::bars;
   ligands.x.title = "vessel";
   ligands.choose = "Ligand";
@@ -81,7 +84,8 @@ void add_holders(PageBuilder& page, const ResultView& view, const Moment& now) {
   metals.reading = "All of a metal dissolved in a vessel is 100 %.";
   metals.choose = "Metal";
   const std::size_t vessels = view.size("unit");
-  ligands.views = sharing_views(view, vessels, amount, [&](std::size_t c) { return of_interest(view, c) && !is_metal(view, c) && !view.text("component_family", c).empty(); });
+  ligands.views = sharing_views(
+      view, vessels, amount, [&](std::size_t c) { return of_interest(view, c) && !is_metal(view, c) && !view.text("component_family", c).empty(); });
   metals.views = sharing_views(view, vessels, amount, [&](std::size_t c) { return is_metal(view, c); });
   if (ligands.views.empty() && metals.views.empty()) return;
   page.section("holders", "Who holds what");

@@ -113,7 +113,8 @@ PageChart time_chart(const ResultView& view, const std::vector<std::size_t>& row
 void add_stage_charts(PageBuilder& page, const ResultView& view, const Moment& now) {
   const std::vector<std::size_t> outlets = outlets_of(view);
   PageChart left = stage_chart(view, "left-by-stage", "Metal not yet dissolved, by stage",
-                               "Of each metal fed, what is still in fed minerals in the pulp that leaves the vessel; a stage that hardly lowers it is not earning its volume.");
+                               "Of each metal fed, what is still in fed minerals in the pulp that leaves the vessel; a stage that hardly lowers it "
+                               "is not earning its volume.");
   PageChart dissolved = stage_chart(view, "dissolved-by-stage", "Metal dissolved, by stage", "Concentration in the liquor that leaves each vessel.");
   ChartView undissolved_view{"", {"% of metal fed", "%", false, false, 0.0, {}}, {}, {}}, dissolved_view{"", {"mg/L", "mg/L"}, {}, {}};
   for (std::size_t e = 0; e < view.size("element"); ++e) {
@@ -137,7 +138,8 @@ void add_stage_charts(PageBuilder& page, const ResultView& view, const Moment& n
   page.chart(left);
   page.chart(dissolved);
 
-  PageChart chemistry = stage_chart(view, "ph-by-stage", "pH and free ligands, by stage", "pH (left) and what is left of each ligand neither bound nor protonated (right).");
+  PageChart chemistry = stage_chart(view, "ph-by-stage", "pH and free ligands, by stage",
+                                    "pH (left) and what is left of each ligand neither bound nor protonated (right).");
   ChartView both{"", {}, ChartAxis{"free ligand, mol/kg", "mol/kg"}, {}};
   ChartSeries ph{"pH", {}};
   for (std::size_t u = 0; u < view.size("unit"); ++u) ph.values.push_back(now.at("ph", {u}));
@@ -175,7 +177,8 @@ void add_families(PageBuilder& page, const ResultView& view) {
         highest = std::max(highest, *std::max_element(series.values.begin(), series.values.end()));
         one.series.push_back(std::move(series));
       }
-      std::erase_if(one.series, [&](const ChartSeries& series) { return *std::max_element(series.values.begin(), series.values.end()) < 1e-4 * highest; });
+      std::erase_if(one.series,
+                    [&](const ChartSeries& series) { return *std::max_element(series.values.begin(), series.values.end()) < 1e-4 * highest; });
       if (highest > 0 && !one.series.empty()) families.views.push_back(std::move(one));
     }
   page.chart(families);
@@ -192,17 +195,25 @@ void add_history(PageBuilder& page, const ResultView& view, TableShelf& shelf) {
     for (std::size_t row : rows) out.push_back(value(row));
     return out;
   };
-  PageChart recovery = time_chart(view, rows, "recovery-through-time", "Recovery through time", "Whole lines: recovery at the moment. Dashed lines: all recovered over all fed since the start.");
+  PageChart recovery = time_chart(view, rows, "recovery-through-time", "Recovery through time",
+                                  "Whole lines: recovery at the moment. Dashed lines: all recovered over all fed since the start.");
   ChartView shares{"", {"% of metal fed", "%", false, false, 0.0, {}}, {}, {}};
   for (std::size_t e = 0; e < view.size("element"); ++e) {
     const std::string& metal = view.labels("element")[e];
-    shares.series.push_back({metal + " now", along([&](std::size_t t) { return 100 * view.at("recovery", {t, e}); }), static_cast<int>(e), "", "whole"});
-    shares.series.push_back({metal + " to date", along([&](std::size_t t) { return 100 * view.at("recovery_to_date", {t, e}); }), static_cast<int>(e), "", "dashed"});
+    shares.series.push_back({metal + " now", along([&](std::size_t t) {
+                               return 100 * view.at("recovery", {t, e});
+                             }),
+                             static_cast<int>(e), "", "whole"});
+    shares.series.push_back({metal + " to date", along([&](std::size_t t) {
+                               return 100 * view.at("recovery_to_date", {t, e});
+                             }),
+                             static_cast<int>(e), "", "dashed"});
   }
   recovery.views = {shares};
   page.chart(recovery);
 
-  PageChart ph = time_chart(view, rows, "ph-through-time", "pH of each vessel through time", "A vessel whose pH still moves at the end is not at rest yet.");
+  PageChart ph =
+      time_chart(view, rows, "ph-through-time", "pH of each vessel through time", "A vessel whose pH still moves at the end is not at rest yet.");
   ChartView acidity;
   for (std::size_t u = 0; u < view.size("unit"); ++u)
     acidity.series.push_back({view.labels("unit")[u], along([&](std::size_t t) { return view.at("ph", {t, u}); }), static_cast<int>(u)});

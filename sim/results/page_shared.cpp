@@ -12,7 +12,8 @@ namespace leat {
 namespace {
 
 // Beginnings of the cautions about harm to people; they stand first and apart.
-constexpr const char* hazards[] = {"ammonia vapour", "hydrogen cyanide", "silver ammine", "acid meets", "cyanide effluent", "chlorine", "hydrogen sulfide", "vapour"};
+constexpr const char* hazards[] = {"ammonia vapour",   "hydrogen cyanide", "silver ammine",    "acid meets",
+                                   "cyanide effluent", "chlorine",         "hydrogen sulfide", "vapour"};
 
 bool is_hazard(const std::string& line) {
   const std::string kind = line.substr(0, line.find(':'));
@@ -23,8 +24,9 @@ std::string list_html(const std::vector<std::string>& lines) {
   std::string html = "<ul>\n";
   for (const std::string& line : lines) {
     const std::size_t colon = line.find(": ");
-    html += colon == std::string::npos ? "<li>" + escaped(line) + "</li>\n"
-                                       : "<li><strong>" + escaped(line.substr(0, colon)) + ":</strong> " + escaped(line.substr(colon + 2)) + "</li>\n";
+    html += colon == std::string::npos
+                ? "<li>" + escaped(line) + "</li>\n"
+                : "<li><strong>" + escaped(line.substr(0, colon)) + ":</strong> " + escaped(line.substr(colon + 2)) + "</li>\n";
   }
   return html + "</ul>\n";
 }
@@ -61,7 +63,9 @@ void TableShelf::take(PageBuilder& page, std::string_view name, bool tall) {
   drop(name);
 }
 
-void TableShelf::drop(std::string_view name) { std::erase_if(tables_, [&](const ResultTable& table) { return table.name == name; }); }
+void TableShelf::drop(std::string_view name) {
+  std::erase_if(tables_, [&](const ResultTable& table) { return table.name == name; });
+}
 
 void TableShelf::take_rest(PageBuilder& page) {
   std::erase_if(tables_, [](const ResultTable& table) { return table.rows.empty(); });
@@ -86,7 +90,8 @@ std::string closure_words(const ResultView& view) {
   const auto balances = worst_of(view, {"closure_elements", "closure_water", "closure_mass", "closure_charge", "closure_cells", "closure"});
   if (!balances) return {};
   std::string words = fmt::format("All balances close to {}", power(*balances));
-  if (const auto action = worst_of(view, {"closure_mass_action"})) words += fmt::format(", the laws of mass action to {} (natural logarithm)", power(*action));
+  if (const auto action = worst_of(view, {"closure_mass_action"}))
+    words += fmt::format(", the laws of mass action to {} (natural logarithm)", power(*action));
   words += view.has("steady_closure_elements") ? ", computed afresh from the steady state's flows." : ", computed afresh from states and flows.";
   if (view.has("steady_closure_elements") && view.attribute("leat_mode") == "through time") {
     double most = 0;
@@ -101,18 +106,30 @@ void add_constants(PageBuilder& page, const ResultView& view) {
   if (view.size("constant") == 0) return;
   page.section("constants", "Constants used");
   page.paragraph("Every equilibrium constant in play, as measured, with where it is from and how well that is known. Press a heading to sort.");
-  ResultTable table{"constants", "", {{"constant", ""}, {"log10 K", "", 2}, {"spread", "", 2}, {"T", "degC", 1}, {"I", "mol/kg"}, {"enthalpy", "kJ/mol", 1},
-                                      {"reaction", ""}, {"evidence", ""}, {"source", ""}}, {}, ""};
+  ResultTable table{"constants",
+                    "",
+                    {{"constant", ""},
+                     {"log10 K", "", 2},
+                     {"spread", "", 2},
+                     {"T", "degC", 1},
+                     {"I", "mol/kg"},
+                     {"enthalpy", "kJ/mol", 1},
+                     {"reaction", ""},
+                     {"evidence", ""},
+                     {"source", ""}},
+                    {},
+                    ""};
   std::map<std::string, std::string> sources;  // short name and citation
   for (std::size_t k = 0; k < view.size("constant"); ++k) {
     const std::string cited = view.text("constant_key", k);
-    table.rows.push_back({view.labels("constant")[k], view.at("constant_log10_k", {k}), view.at("constant_spread", {k}), view.at("constant_temperature", {k}) - zero_celsius,
-                          view.at("constant_ionic_strength", {k}), view.at("constant_enthalpy", {k}) / 1000, view.text("constant_reaction", k),
-                          view.text("constant_evidence", k), cited.empty() ? view.text("constant_source", k) : cited});
+    table.rows.push_back({view.labels("constant")[k], view.at("constant_log10_k", {k}), view.at("constant_spread", {k}),
+                          view.at("constant_temperature", {k}) - zero_celsius, view.at("constant_ionic_strength", {k}),
+                          view.at("constant_enthalpy", {k}) / 1000, view.text("constant_reaction", k), view.text("constant_evidence", k),
+                          cited.empty() ? view.text("constant_source", k) : cited});
     if (!cited.empty()) sources[cited] = view.text("constant_source", k);
   }
   table.note = "spread: half-width of published values, in decades. A dash under enthalpy: none is known, the constant is used as measured.";
-  page.table({table, true, true, {}, 100000});
+  page.table({table, true, true, {}, 100000, true});
   if (sources.empty()) return;
   page.heading("Sources");
   std::string list = "<dl class=\"sources\">\n";
@@ -171,8 +188,10 @@ ChartAxis ph_axis(const std::vector<ChartSeries>& series) {
     for (double value : one.values)
       if (std::isfinite(value) && !one.right) low = std::min(low, value), high = std::max(high, value);
   if (low > high) return axis;
-  axis.min = std::floor(2 * low) / 2;
-  axis.max = std::max(std::ceil(2 * high) / 2, *axis.min + 0.5);
+  const double span = high - low, grain = span > 6 ? 2 : span > 2.5 ? 1 : 0.5;
+  axis.min = grain * std::floor(low / grain);
+  axis.max = std::max(grain * std::ceil(high / grain), *axis.min + grain);
+  axis.step = *axis.max - *axis.min > 1.2 ? grain : 0.1 * std::round(20 * (*axis.max - *axis.min) / 10);
   return axis;
 }
 
@@ -201,7 +220,8 @@ std::vector<ChartView> sharing_views(const ResultView& view, std::size_t places,
     if (ranked.empty()) continue;
     std::sort(ranked.begin(), ranked.end());
     if (ranked.size() > most) ranked.resize(most - 1);
-    ChartView made{view.labels("component")[c], {fmt::format("share of dissolved {}, %", view.labels("component")[c]), "%", false, false, 0.0, 100.0}, {}, {}};
+    ChartView made{
+        view.labels("component")[c], {fmt::format("share of dissolved {}, %", view.labels("component")[c]), "%", false, false, 0.0, 100.0}, {}, {}};
     std::vector<double> rest(places, 100.0);
     for (const auto& [share, s] : ranked) {
       ChartSeries series{species[s], {}};

@@ -23,8 +23,10 @@ std::vector<ColumnLook> looks_of(const ResultTable& table) {
   for (const auto& row : table.rows)
     for (std::size_t k = 0; k < row.size(); ++k) {
       const std::string* text = std::get_if<std::string>(&row[k]);
-      if (!text) looks[k].numeric = true;
-      else if (text->size() > long_cell) looks[k].wide = true;
+      if (!text)
+        looks[k].numeric = true;
+      else if (text->size() > long_cell)
+        looks[k].wide = true;
     }
   return looks;
 }
@@ -51,13 +53,20 @@ std::string cell_html(const PageTable& page, std::size_t row, std::size_t column
 std::string escaped(std::string_view text) {
   std::string out;
   for (char c : readable_text(text)) {
-    if (c == '&') out += "&amp;";
-    else if (c == '<') out += "&lt;";
-    else if (c == '>') out += "&gt;";
-    else if (c == '"') out += "&quot;";
-    else if (c == '\'') out += "&#39;";
-    else if (c == '\r') out += "&#13;";
-    else out += c;
+    if (c == '&')
+      out += "&amp;";
+    else if (c == '<')
+      out += "&lt;";
+    else if (c == '>')
+      out += "&gt;";
+    else if (c == '"')
+      out += "&quot;";
+    else if (c == '\'')
+      out += "&#39;";
+    else if (c == '\r')
+      out += "&#13;";
+    else
+      out += c;
   }
   return out;
 }
@@ -65,9 +74,12 @@ std::string escaped(std::string_view text) {
 std::string kept_id(std::string_view text) {
   std::string id;
   for (char c : text) {
-    if (c >= 'A' && c <= 'Z') id += static_cast<char>(c - 'A' + 'a');
-    else if ((c >= 'a' && c <= 'z') || (c >= '0' && c <= '9')) id += c;
-    else if (!id.empty() && id.back() != '-') id += '-';
+    if (c >= 'A' && c <= 'Z')
+      id += static_cast<char>(c - 'A' + 'a');
+    else if ((c >= 'a' && c <= 'z') || (c >= '0' && c <= '9'))
+      id += c;
+    else if (!id.empty() && id.back() != '-')
+      id += '-';
   }
   return id.empty() ? "x" : id;
 }
@@ -87,13 +99,18 @@ void PageBuilder::table(const PageTable& page) {
   if (table.rows.empty()) return;
   const std::vector<ColumnLook> looks = looks_of(table);
   const std::string name = table.heading.empty() ? "Numbers of the chart" : table.heading;
-  body_ += fmt::format("<div class=\"scroll{}\" tabindex=\"0\" role=\"region\" aria-label=\"{}\">\n<table class=\"data{}\" data-table=\"{}\">\n", page.tall ? " tall" : "",
-                       escaped(name), page.sortable ? " sortable" : "", escaped(table.name));
+  body_ += fmt::format("<div class=\"scroll{}\" tabindex=\"0\" role=\"region\" aria-label=\"{}\">\n<table class=\"data{}\" data-table=\"{}\">\n",
+                       page.tall ? " tall" : "", escaped(name),
+                       page.searchable ? " sortable searchable"
+                       : page.sortable ? " sortable"
+                                       : "",
+                       escaped(table.name));
   if (!table.heading.empty()) body_ += "<caption>" + escaped(table.heading) + "</caption>\n";
   body_ += "<thead><tr>";
   for (std::size_t k = 0; k < table.columns.size(); ++k)
-    body_ += fmt::format("<th scope=\"col\"{}>{}{}</th>", looks[k].numeric ? " class=\"n\"" : "", escaped(table.columns[k].header),
-                         table.columns[k].unit.empty() || table.columns[k].unit == "1" ? "" : "<small>" + escaped(table.columns[k].unit) + "</small>");
+    body_ +=
+        fmt::format("<th scope=\"col\"{}>{}{}</th>", looks[k].numeric ? " class=\"n\"" : "", escaped(table.columns[k].header),
+                    table.columns[k].unit.empty() || table.columns[k].unit == "1" ? "" : "<small>" + escaped(table.columns[k].unit) + "</small>");
   body_ += "</tr></thead>\n<tbody>\n";
   for (std::size_t row : picked(table.rows.size(), page.most)) {
     body_ += "<tr>";

@@ -38,7 +38,8 @@ std::string unfit(const ResultSet& results) {
   if (kind.empty()) return "is an HDF5 file, but not a results file of leat";
   if (kind != "run" && kind != "beaker" && kind != "ladder") return "holds results of the kind '" + kind + "', which this leat does not know";
   if (version != format_version)
-    return "is of version " + version + " of the results format, this leat reads version " + format_version + "; run " + attribute(results, "leat_input_file") + " again";
+    return "is of version " + version + " of the results format, this leat reads version " + format_version + "; run " +
+           attribute(results, "leat_input_file") + " again";
   return {};
 }
 
@@ -65,7 +66,8 @@ MadePage page_of_file(const std::string& path) {
     return made;
   }
   made.title = attribute(*results, "title");
-  if (const TextTable* cautions = find_texts(*results, "cautions_in_short"); cautions && !cautions->values.empty()) made.cautions = cautions->values.front();
+  if (const TextTable* cautions = find_texts(*results, "cautions_in_short"); cautions && !cautions->values.empty())
+    made.cautions = cautions->values.front();
   return made;
 }
 
@@ -136,7 +138,8 @@ int report_ledger(const ReportArguments& arguments, const std::string& out, Answ
   answer.title = campaign->title;
   if (write_case_pages(*campaign, arguments, out, answer) && write_page(page_of(*campaign), "page", out, answer)) {
     answer.lines.push_back("One HTML page, complete in itself: a browser opens it, no network is needed.");
-    if (answer.written.size() > 1) answer.lines.push_back(std::to_string(answer.written.size() - 1) + " leading cases have pages of their own, linked from it.");
+    if (answer.written.size() > 1)
+      answer.lines.push_back(std::to_string(answer.written.size() - 1) + " leading cases have pages of their own, linked from it.");
   }
   return say(answer, arguments.manner);
 }
@@ -152,9 +155,11 @@ int report_verb(const ReportArguments& arguments) {
   if (!std::ifstream(arguments.file)) return refused(answer, arguments.manner, Exit::input_faults, "cannot be read");
   const FileKind kind = kind_of(arguments.file);
   if (kind == FileKind::other)
-    return refused(answer, arguments.manner, Exit::input_faults, "is neither a results file nor a ledger of leat; leat run, speciate, ladder and campaign write them");
+    return refused(answer, arguments.manner, Exit::input_faults,
+                   "is neither a results file nor a ledger of leat; leat run, speciate, ladder and campaign write them");
   if (!page_available())
-    return refused(answer, arguments.manner, Exit::machine_trouble, "this leat was built without pages: npm was missing or could not fetch what they are made of");
+    return refused(answer, arguments.manner, Exit::machine_trouble,
+                   "this leat was built without pages: npm was missing or could not fetch what they are made of");
   const std::string out = arguments.out.empty() ? page_beside(arguments.file) : arguments.out;
   if (std::filesystem::exists(out, error) && std::filesystem::equivalent(out, arguments.file, error))
     return refused(answer, arguments.manner, Exit::usage, "--out is the file itself; the page needs a name of its own");

@@ -13,7 +13,7 @@ export function figures(value, digits = 4) {
 }
 
 export function raised(number) {
-  const signs = { "-": "⁻", 0: "⁰", 1: "¹", 2: "²", 3: "³", 4: "⁴", 5: "⁵", 6: "⁶", 7: "⁷", 8: "⁸", 9: "⁹" };
+  const signs = {"-": "⁻", 0: "⁰", 1: "¹", 2: "²", 3: "³", 4: "⁴", 5: "⁵", 6: "⁶", 7: "⁷", 8: "⁸", 9: "⁹"};
   return [...String(number)].map((sign) => signs[sign]).join("");
 }
 
@@ -29,9 +29,7 @@ export function tick(value) {
   return String(Number(value.toPrecision(6)));
 }
 
-export function escaped(text) {
-  return String(text).replace(/[&<>"']/g, (sign) => `&#${sign.charCodeAt(0)};`);
-}
+export function escaped(text) { return String(text).replace(/[&<>"']/g, (sign) => `&#${sign.charCodeAt(0)};`); }
 
 // An element with attributes and children; texts become text nodes, so that no name from a file is ever markup.
 export function element(name, attributes = {}, ...children) {
@@ -45,11 +43,10 @@ export function drawn(name, attributes = {}, ...children) {
 }
 
 function filled(made, attributes, children) {
-  for (const [key, value] of Object.entries(attributes)) if (value !== undefined && value !== null) made.setAttribute(key, value);
+  for (const [key, value] of Object.entries(attributes))
+    if (value !== undefined && value !== null) made.setAttribute(key, value);
   made.append(...children.filter((child) => child !== null && child !== undefined));
   return made;
 }
 
-export function colour(name) {
-  return getComputedStyle(document.documentElement).getPropertyValue(`--${name}`).trim();
-}
+export function colour(name) { return getComputedStyle(document.documentElement).getPropertyValue(`--${name}`).trim(); }

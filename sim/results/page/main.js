@@ -1,8 +1,8 @@
 // Starts the page: charts, diagram, tables. Everything it draws stands in the data block, which C++ wrote.
-import { place } from "./charts.js";
-import { placeCloud } from "./cloud.js";
-import { markContents, placeCopyButtons } from "./pages.js";
-import { placeTables } from "./tables.js";
+import {place} from "./charts.js";
+import {placeCloud} from "./cloud.js";
+import {markContents, placeCopyButtons} from "./pages.js";
+import {placeTables} from "./tables.js";
 
 const data = JSON.parse(document.getElementById("page-data").textContent);
 const redraws = [];
@@ -40,8 +40,10 @@ addEventListener("beforeprint", () => {
   redrawAll();
 });
 addEventListener("afterprint", () => {
-  if (before) document.documentElement.dataset.theme = before;
-  else delete document.documentElement.dataset.theme;
+  if (before)
+    document.documentElement.dataset.theme = before;
+  else
+    delete document.documentElement.dataset.theme;
   redrawAll();
 });
 drawnDiagram.then(() => document.documentElement.classList.add("drawn"));

@@ -1,10 +1,10 @@
 // Small conveniences of the page: copying the input, printing with all figures open, marking where one is in the contents.
-import { element } from "./figures.js";
+import {element} from "./figures.js";
 
 export function placeCopyButtons() {
   for (const text of document.querySelectorAll("pre.copy")) {
-    const said = element("span", { role: "status", class: "count" });
-    const button = element("button", { type: "button", class: "plain" }, "Copy this text");
+    const said = element("span", {role: "status", class: "count"});
+    const button = element("button", {type: "button", class: "plain"}, "Copy this text");
     button.addEventListener("click", async () => {
       try {
         await navigator.clipboard.writeText(text.textContent);
@@ -14,7 +14,7 @@ export function placeCopyButtons() {
         said.textContent = "selected; press Ctrl+C";
       }
     });
-    text.before(element("p", { class: "search" }, button, " ", said));
+    text.before(element("p", {class: "search"}, button, " ", said));
   }
 }
 
@@ -25,7 +25,7 @@ export function markContents() {
     for (const entry of entries) entry.isIntersecting ? seen.add(entry.target.id) : seen.delete(entry.target.id);
     const first = [...links.keys()].find((id) => seen.has(id));
     for (const [id, link] of links) id === first ? link.setAttribute("aria-current", "true") : link.removeAttribute("aria-current");
-  }, { rootMargin: "-10% 0px -60% 0px" });
+  }, {rootMargin: "-10% 0px -60% 0px"});
   for (const id of links.keys()) {
     const section = document.getElementById(id);
     if (section) watcher.observe(section);

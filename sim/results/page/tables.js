@@ -1,5 +1,5 @@
 // Tables that can be sorted by a column and searched.
-import { element } from "./figures.js";
+import {element} from "./figures.js";
 
 function sortKey(cell) {
   const number = cell.dataset.v ?? cell.textContent.trim();
@@ -18,7 +18,7 @@ function compared(a, b, way) {
 function makeSortable(table) {
   const heads = [...table.tHead.rows[0].cells];
   heads.forEach((head, column) => {
-    const button = element("button", { type: "button", class: "sort", title: "Sort by this column" });
+    const button = element("button", {type: "button", class: "sort", title: "Sort by this column"});
     button.append(...head.childNodes);
     head.append(button);
     button.addEventListener("click", () => {
@@ -26,16 +26,16 @@ function makeSortable(table) {
       heads.forEach((other) => other.removeAttribute("aria-sort"));
       head.setAttribute("aria-sort", up ? "ascending" : "descending");
       const body = table.tBodies[0];
-      const rows = [...body.rows].map((row) => ({ row, key: sortKey(row.cells[column]) }));
+      const rows = [...body.rows].map((row) => ({row, key: sortKey(row.cells[column])}));
       rows.sort((a, b) => compared(a.key, b.key, up ? 1 : -1));
-      body.append(...rows.map(({ row }) => row));
+      body.append(...rows.map(({row}) => row));
     });
   });
 }
 
 function makeSearchable(table) {
-  const box = element("input", { type: "search", placeholder: "part of a row" });
-  const count = element("span", { class: "count", role: "status" });
+  const box = element("input", {type: "search", placeholder: "part of a row"});
+  const count = element("span", {class: "count", role: "status"});
   const rows = [...table.tBodies[0].rows];
   box.addEventListener("input", () => {
     const wanted = box.value.trim().toLowerCase();
@@ -46,12 +46,12 @@ function makeSearchable(table) {
     }
     count.textContent = wanted === "" ? "" : `${found} of ${rows.length} rows`;
   });
-  table.closest(".scroll").before(element("p", { class: "search" }, element("label", {}, "Search ", box), " ", count));
+  table.closest(".scroll").before(element("p", {class: "search"}, element("label", {}, "Search ", box), " ", count));
 }
 
 export function placeTables() {
   for (const table of document.querySelectorAll("table.sortable")) {
     makeSortable(table);
-    if (table.tBodies[0].rows.length > 24) makeSearchable(table);
+    if (table.classList.contains("searchable") && table.tBodies[0].rows.length > 12) makeSearchable(table);
   }
 }
