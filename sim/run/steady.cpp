@@ -11,7 +11,7 @@
 namespace leat {
 namespace {
 
-constexpr int first_sweeps = 2;
+constexpr int first_sweeps = 2, round_sweeps = 4, more_rounds = 5;
 constexpr double close_by = 1e-3;            // scaled residual from which plain Newton steps arrive [1]
 constexpr double transient_turnovers = 30;  // of the whole hold-up, in the fallback
 constexpr double torn_lag = 20;             // a torn stream follows within a second; rings of them within this [s]
@@ -229,6 +229,11 @@ SteadyReport solve_steady(CircuitEquations& equations, std::vector<double>& y) {
   report.circuit = whole(equations, y, scales);
   if (!report.circuit.ok && !report.stages.ok && report.stages.message.find("not finite") != std::string::npos)
     report.circuit.message = report.stages.message;  // what a later vessel says of it is a consequence
+  // Metals fill the returns only slowly: sweeps are cheap beside letting time pass.
+  for (int round = 0; round < more_rounds && !report.circuit.ok && !y.empty(); ++round) {
+    for (int k = 0; k < round_sweeps; ++k, ++report.sweeps) report.stages = sweep(equations, y, scales, false);
+    report.circuit = whole(equations, y, scales);
+  }
   if (!report.circuit.ok && !y.empty() && pass_time(equations, y)) {
     report.through_time = true;
     report.circuit = whole(equations, y, scales);
