@@ -147,6 +147,13 @@ class SameBits(Climbed):
     def test_three_series_of_circuits(self):
         self.assertEqual(self.follow(self.ladder(THREE)), 30)
 
+    def test_every_rung_over_a_wide_range_is_solved(self):
+        """Finer and wider than the example: a rung that finds no steady state is a fault of the solver, not of these circuits."""
+        for name, what in (("ammonia", "NH3: 0.1 % to 12 %"), ("chloride", "NaCl: 1 % to 22 %"), ("cyanide", "NaCN: 0.01 % to 1 %")):
+            rungs = self.ladder(os.path.join(support.FLOWSHEETS, f"silver_in_{name}.yaml"), "--vary", f"reagents.lixiviant.made_of.{what} in 60 logarithmic points")
+            with self.subTest(lixiviant=name):
+                self.assertEqual({one.decode() for one in rungs["status"]}, {"solved"})
+
     def test_a_beaker(self):
         self.assertEqual(self.follow(self.ladder(STRENGTH)), 13)
 
