@@ -115,22 +115,31 @@ class SentenceReader {
     return true;
   }
 
-  // Both ends as typed; between them twelve significant digits, so that steps of 0.1 read as such, unless that is too coarse.
+  // Both ends as typed; between them as few digits as keep each point within a thousandth of its step: these numbers are typed
+  // into cases, and read by people.
   static std::vector<double> steps(double from, double to, int count, bool logarithmic) {
-    const double largest = std::max(std::abs(from), std::abs(to));
     const double step = std::abs(to / 2 - from / 2) / (count - 1) * 2;  // halves: the ends may be as far apart as numbers go
-    const bool fine = step < 1e-9 * largest;
     std::vector<double> out;
     for (int k = 0; k < count; ++k) {
       const double share = static_cast<double>(k) / (count - 1);
       double value = logarithmic ? std::exp(std::log(from) * (1 - share) + std::log(to) * share) : from * (1 - share) + to * share;
       if (!logarithmic && std::abs(value) < 1e-9 * step) value = 0;
-      if (!fine) value = parse_number(fmt::format("{:.12g}", value)).value_or(value);
+      const double near = logarithmic ? std::abs(value) * (std::exp(std::abs(std::log(to) - std::log(from)) / (count - 1)) - 1) : step;
+      value = rounded(value, near / 1000);
       out.push_back(value);
     }
     out.front() = from;
     out.back() = to;
     return out;
+  }
+
+  // With the fewest significant digits that come this near.
+  static double rounded(double value, double near) {
+    for (int digits = 1; digits < 17; ++digits) {
+      const double written = parse_number(fmt::format("{:.{}g}", value, digits)).value_or(value);
+      if (std::abs(written - value) <= near) return written;
+    }
+    return value;
   }
 
   std::string_view sentence_;

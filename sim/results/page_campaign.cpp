@@ -7,13 +7,14 @@
 #include "sim/results/page_sections.hpp"
 
 namespace leat {
-namespace {
 
 std::string with_unit(const std::string& name, const std::string& unit) { return unit.empty() || unit == "1" ? name : name + ", " + unit; }
 
 std::size_t rank_column(const CampaignResult& campaign) {
   return static_cast<std::size_t>(std::find(campaign.watch.begin(), campaign.watch.end(), campaign.rank_by) - campaign.watch.begin());
 }
+
+namespace {
 
 std::string said(CaseStatus status) {
   std::string word = to_string(status);
@@ -52,14 +53,14 @@ void add_ranking(PageBuilder& page, const CampaignResult& campaign, const std::v
                     {{"case", ""}, {"rank", ""}},
                     {},
                     ""};
-  for (std::size_t k = 0; k < campaign.watch.size(); ++k) table.columns.push_back({campaign.watch[k], campaign.watch_units[k]});
   for (const std::string& path : campaign.paths) table.columns.push_back({path, ""});
+  for (std::size_t k = 0; k < campaign.watch.size(); ++k) table.columns.push_back({campaign.watch[k], campaign.watch_units[k]});
   PageTable shown{table, true, true, {}, most_case_rows, true};
   for (std::size_t place = 0; place < order.size() && place < most_case_rows; ++place) {
     const CampaignCase& one = campaign.cases[order[place]];
     std::vector<TextTableWriter::Cell> row = {fmt::format("{}", one.number), fmt::format("{}", place + 1)};
-    for (std::size_t k = 0; k < campaign.watch.size(); ++k) row.emplace_back(k < one.watched.size() ? one.watched[k] : std::nan(""));
     for (std::size_t k = 0; k < campaign.paths.size(); ++k) row.emplace_back(k < one.inputs.size() ? one.inputs[k] : std::string());
+    for (std::size_t k = 0; k < campaign.watch.size(); ++k) row.emplace_back(k < one.watched.size() ? one.watched[k] : std::nan(""));
     shown.table.rows.push_back(std::move(row));
     shown.links.push_back(one.page);
   }
@@ -140,55 +141,11 @@ std::vector<std::size_t> ranked_cases(const CampaignResult& campaign) {
   return order;
 }
 
-void add_effects(PageBuilder& page, const CampaignResult& campaign) {
-  constexpr std::size_t most_values = 40;
-  const std::size_t by = rank_column(campaign);
-  if (by >= campaign.watch.size()) return;
-  std::vector<PageChart> charts;
-  for (std::size_t input = 0; input < campaign.paths.size(); ++input) {
-    std::vector<std::string> values;  // in the order in which they first come
-    std::map<std::string, std::vector<double>> results;
-    for (const CampaignCase& one : campaign.cases) {
-      if (input >= one.inputs.size()) continue;
-      if (std::find(values.begin(), values.end(), one.inputs[input]) == values.end()) values.push_back(one.inputs[input]);
-      if (one.status == CaseStatus::done && by < one.watched.size() && std::isfinite(one.watched[by]))
-        results[one.inputs[input]].push_back(one.watched[by]);
-    }
-    if (values.size() < 2 || values.size() > most_values) continue;
-    PageChart chart;
-    chart.id = fmt::format("effect-{}", input + 1);
-    chart.title = campaign.paths[input];
-    chart.reading = "Mean, smallest and largest " + campaign.rank_by + " of the cases with each value.";
-    chart.kind = ChartKind::spans;
-    chart.height = 220;
-    chart.x.title = campaign.paths[input];
-    chart.labels = values;
-    const std::string unit = campaign.watch_units[by] == "1" ? "" : campaign.watch_units[by];
-    ChartView view{"", {with_unit(campaign.rank_by, unit), unit, false, true}, {}, {{"smallest", {}}, {"mean", {}}, {"largest", {}}}};
-    for (const std::string& value : values) {
-      const std::vector<double>& all = results[value];
-      double sum = 0;
-      for (double one : all) sum += one;
-      view.series[0].values.push_back(all.empty() ? std::nan("") : *std::min_element(all.begin(), all.end()));
-      view.series[1].values.push_back(all.empty() ? std::nan("") : sum / static_cast<double>(all.size()));
-      view.series[2].values.push_back(all.empty() ? std::nan("") : *std::max_element(all.begin(), all.end()));
-    }
-    chart.views = {view};
-    charts.push_back(std::move(chart));
-  }
-  if (charts.empty()) return;
-  page.section("effects", "What each input does");
-  page.paragraph(
-      "Wide spans mean that the other inputs matter more than this one; a mean that moves from value to value is this input's own effect.");
-  page.html("<div class=\"multiples\">\n");
-  for (const PageChart& chart : charts) page.chart(chart);
-  page.html("</div>\n");
-}
-
 void add_campaign(PageBuilder& page, const CampaignResult& campaign) {
   const std::vector<std::size_t> order = ranked_cases(campaign);
   page.section("answer", "The answer");
   add_counts(page, campaign, order);
+  add_caution_boxes(page, campaign.cautions);
   ResultTable meanings{"watched", "What is watched", {{"result", ""}, {"unit", ""}, {"meaning", ""}}, {}, ""};
   for (std::size_t k = 0; k < campaign.watch.size(); ++k)
     meanings.rows.push_back({campaign.watch[k], campaign.watch_units[k] == "1" ? std::string() : campaign.watch_units[k],

@@ -20,7 +20,7 @@ struct ChartSeries {
   std::vector<double> values = {};    // NaN: nothing there
   int look = -1;                      // colour, dash, marker and pattern; -1: in order
   std::string rest = {};              // rest-left, rest-lost, rest-formed: what is not recovered, in quiet tones
-  std::string stroke = {};            // whole or dashed; empty: as its look says
+  std::string stroke = {};            // whole, dashed or none; empty: as its look says
   bool right = false;                 // on the right-hand axis, as a line
   std::vector<double> at = {};        // its own abscissas; empty: the chart's
 };
@@ -55,6 +55,7 @@ struct FlowNumber {
 };
 struct FlowOperation {
   std::string name = {}, kind = {};
+  bool air = false;                   // takes up oxygen from air
   std::vector<FlowNumber> facts = {};
 };
 struct FlowStream {

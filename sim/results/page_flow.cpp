@@ -13,11 +13,12 @@ constexpr double hour = 3600;  // [s]
 double ratio(double part, double whole) { return whole > 0 ? part / whole : std::nan(""); }
 
 FlowOperation operation_of(const ResultView& view, const Moment& now, std::size_t index) {
-  FlowOperation made{view.labels("operation")[index], view.text("operation_kind", index), {}};
+  FlowOperation made{view.labels("operation")[index], view.text("operation_kind", index), false, {}};
   const std::vector<std::string>& vessels = view.labels("unit");
   const auto found = std::find(vessels.begin(), vessels.end(), made.name);
   if (found == vessels.end()) return made;
   const std::size_t u = static_cast<std::size_t>(found - vessels.begin());
+  made.air = !std::isnan(now.at("oxygen_taken_up", {u}));
   const double volume = now.at("pulp_volume", {u});
   made.facts = {{"volume", "m³", volume},
                 {"residence time", "h", ratio(volume, now.at("outlet_flow", {u})) / hour},

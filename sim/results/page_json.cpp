@@ -47,7 +47,10 @@ Json series_json(const ChartSeries& series) {
   Json json = {{"name", word(series.name)}, {"values", numbers(series.values)}};
   if (series.look >= 0) json["look"] = series.look;
   if (!series.rest.empty()) json["rest"] = series.rest;
-  if (!series.stroke.empty()) json["dash"] = series.stroke == "dashed" ? Json{4, 4} : Json::array();
+  if (series.stroke == "none")
+    json["loose"] = true;
+  else if (!series.stroke.empty())
+    json["dash"] = series.stroke == "dashed" ? Json{4, 4} : Json::array();
   if (series.right) json["right"] = true;
   if (!series.at.empty()) json["x"] = numbers(series.at);
   return json;
@@ -101,6 +104,7 @@ Json flow_json(const FlowDiagram& flow) {
     Json facts = Json::array();
     for (const FlowNumber& fact : one.facts) facts.push_back({{"name", word(fact.name)}, {"value", number(fact.value)}, {"unit", word(fact.unit)}});
     json["operations"].push_back({{"name", word(one.name)}, {"kind", word(one.kind)}, {"facts", facts}});
+    if (one.air) json["operations"].back()["air"] = true;
   }
   for (const FlowStream& one : flow.streams)
     json["streams"].push_back({{"name", word(one.name)},

@@ -3,69 +3,121 @@
 #include <fmt/format.h>
 
 #include "sim/results/page_sections.hpp"
+#include "sim/results/page_values.hpp"
 #include "sim/results/result_access.hpp"
 
 namespace leat {
 namespace {
 
-// The rungs of each series, and what stands along x.
+// The rungs of the series that one picture shows, and what stands along x.
 struct Rungs {
   struct Series {
     std::string name;
     std::vector<std::size_t> rungs;
+    std::vector<double> at;   // along x, one a rung
   };
   std::vector<Series> series;
-  bool quantities = true;  // stepped values are numbers; else their texts stand along x
+  bool quantities = true;     // stepped values are numbers; else their texts stand along x
   ChartAxis x;
+  std::string id, of;         // of one series apart from the others: what its charts' ids and titles end with
 };
 
-Rungs rungs_of(const ResultView& view) {
+std::vector<std::string> typed_of(const ResultView& view, const Rungs::Series& series) {
+  std::vector<std::string> typed;
+  for (std::size_t r : series.rungs) typed.push_back(view.text("value_as_typed", r));
+  return typed;
+}
+
+std::string path_of(const ResultView& view, const std::string& series) {
+  const std::vector<std::string>& names = view.labels("series_name");
+  const auto found = std::find(names.begin(), names.end(), series);
+  return found == names.end() ? "" : view.text("stepped_path", static_cast<std::size_t>(found - names.begin()));
+}
+
+bool starts_as_number(const std::string& typed) {
+  const std::size_t first = typed.find_first_not_of(" +-.");
+  return first != std::string::npos && typed[first] >= '0' && typed[first] <= '9';
+}
+
+// A series with an axis of its own: numbers where all are typed in one unit, else words.
+Rungs alone(const ResultView& view, Rungs::Series series, std::size_t place) {
+  Rungs rungs;
+  rungs.id = fmt::format("-{}", place + 1);
+  rungs.of = ": " + series.name;
+  const std::string path = path_of(view, series.name);
+  const auto numbers = typed_numbers(typed_of(view, series));
+  rungs.quantities = numbers.has_value();
+  rungs.x.title = path.empty() ? "stepped input" : path;
+  if (numbers) {
+    series.at = numbers->values;
+    rungs.x.logarithmic = roughly_geometric(numbers->values);
+    rungs.x.unit = numbers->unit;
+    rungs.x.title += (numbers->unit.empty() ? "" : ", " + numbers->unit) + (rungs.x.logarithmic ? ", logarithmic" : "");
+  }
+  rungs.series = {std::move(series)};
+  return rungs;
+}
+
+// Whether the series can share an axis: all numbers of one kind, or all the same words for the same input.
+bool share_axis(const ResultView& view, const std::vector<Rungs::Series>& series, bool quantities) {
+  if (series.size() < 2) return true;
+  if (view.attribute("leat_stepped_units") == "mixed") return false;
+  if (quantities) return true;
+  return std::all_of(series.begin(), series.end(), [&](const Rungs::Series& one) {
+    return path_of(view, one.name) == path_of(view, series.front().name) && typed_of(view, one) == typed_of(view, series.front());
+  });
+}
+
+// All series in one picture, or each in its own where they step different things.
+std::vector<Rungs> pictures_of(const ResultView& view) {
   Rungs rungs;
   for (std::size_t r = 0; r < view.size("rung"); ++r) {
-    const std::string name = view.text("series", r), typed = view.text("value_as_typed", r);
-    if (rungs.series.empty() || rungs.series.back().name != name) rungs.series.push_back({name, {}});
+    const std::string name = view.text("series", r);
+    if (rungs.series.empty() || rungs.series.back().name != name) rungs.series.push_back({name, {}, {}});
     rungs.series.back().rungs.push_back(r);
-    const std::size_t first = typed.find_first_not_of(" +-.");
-    if (first == std::string::npos || typed[first] < '0' || typed[first] > '9') rungs.quantities = false;
+    rungs.series.back().at.push_back(view.at("stepped", {r}));
+    if (!starts_as_number(view.text("value_as_typed", r))) rungs.quantities = false;
+  }
+  if (!share_axis(view, rungs.series, rungs.quantities)) {
+    std::vector<Rungs> apart;
+    for (std::size_t k = 0; k < rungs.series.size(); ++k) apart.push_back(alone(view, rungs.series[k], k));
+    return apart;
   }
   std::string unit = view.attribute("leat_stepped_units");
-  if (unit == "mixed") unit = "each as typed";
-  if (unit == "1") unit.clear();
+  if (unit == "1" || unit == "mixed") unit.clear();
   std::string path = view.attribute("leat_stepped_path");
   for (std::size_t k = 0; k < view.size("series_name"); ++k)
     if (view.text("stepped_path", k) != view.attribute("leat_stepped_path")) path = "stepped input";  // each series has its own
   rungs.x = {path + (unit.empty() ? "" : ", " + unit), unit, view.attribute("leat_scale") == "logarithmic" && rungs.quantities};
   if (rungs.x.logarithmic) rungs.x.title += ", logarithmic";
-  return rungs;
+  return {rungs};
 }
 
 class LadderCharts {
  public:
-  LadderCharts(PageBuilder& page, const ResultView& view) : page_(page), view_(view), rungs_(rungs_of(view)) {}
+  LadderCharts(PageBuilder& page, const ResultView& view, Rungs rungs) : page_(page), view_(view), rungs_(std::move(rungs)) {}
 
-  PageChart start(std::string id, std::string title, std::string reading) const {
+  PageChart start(const std::string& id, const std::string& title, std::string reading) const {
     PageChart chart;
-    chart.id = std::move(id);
-    chart.title = std::move(title);
+    chart.id = id + rungs_.id;
+    chart.title = title + rungs_.of;
     chart.reading = std::move(reading);
     chart.x = rungs_.x;
     if (!rungs_.quantities)
       for (const Rungs::Series& one : rungs_.series)
-        if (one.rungs.size() > chart.labels.size()) {
-          chart.labels.clear();
-          for (std::size_t r : one.rungs) chart.labels.push_back(view_.text("value_as_typed", r));
-        }
+        if (one.rungs.size() > chart.labels.size()) chart.labels = typed_of(view_, one);
     return chart;
   }
   // One line over the rungs of a series; rungs without a value are left out.
   ChartSeries line(const Rungs::Series& of, std::string name, int look, const std::function<double(std::size_t)>& value) const {
     ChartSeries made{std::move(name), {}, look};
-    for (std::size_t r : of.rungs) {
-      const double here = value(r);
+    if (!rungs_.quantities) made.stroke = "none";  // no way leads from word to word
+    for (std::size_t k = 0; k < of.rungs.size(); ++k) {
+      const double here = value(of.rungs[k]);
       if (!rungs_.quantities)
         made.values.push_back(here);
       else if (std::isfinite(here)) {
-        made.at.push_back(view_.at("stepped", {r}));
+        made.at.push_back(of.at[k]);
         made.values.push_back(here);
       }
     }
@@ -221,7 +273,13 @@ class LadderCharts {
 
 void add_ladder(PageBuilder& page, const ResultView& view) {
   TableShelf shelf(tables_of(view.results()));
-  LadderCharts charts(page, view);
+  std::vector<LadderCharts> pictures;
+  for (const Rungs& one : pictures_of(view)) pictures.emplace_back(page, view, one);
+  const auto draw = [&](void (LadderCharts::*chart)()) {
+    if (pictures.size() > 1) page.html("<div class=\"multiples\">\n");
+    for (LadderCharts& one : pictures) (one.*chart)();
+    if (pictures.size() > 1) page.html("</div>\n");
+  };
   page.section("answer", "The answer");
   const std::size_t rungs = view.size("rung");
   std::size_t solved = 0;
@@ -229,19 +287,19 @@ void add_ladder(PageBuilder& page, const ResultView& view) {
   page.paragraph(solved == rungs ? fmt::format("All {} rungs are solved.", rungs)
                                  : fmt::format("{} of {} rungs are solved; why the others are not stands below.", solved, rungs));
   add_cautions(page, view);
-  charts.recovery();
-  charts.dissolved();
+  draw(&LadderCharts::recovery);
+  draw(&LadderCharts::dissolved);
   if (const std::string words = closure_words(view); !words.empty()) page.paragraph(words);
   if (shelf.has("failures")) {
     page.heading("Rungs that are not there");
     shelf.take(page, "failures", true);
   }
   page.section("distribution", "Who holds the metals");
-  charts.distribution();
+  draw(&LadderCharts::distribution);
   shelf.take(page, "distribution", true);
   page.section("liquor", "Liquor, solids, reagents");
-  charts.state();
-  charts.reagents();
+  draw(&LadderCharts::state);
+  draw(&LadderCharts::reagents);
   page.section("rungs", "Rung by rung");
   shelf.take(page, "ladder", rungs > 30);
   shelf.drop("constants");

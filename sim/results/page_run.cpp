@@ -50,6 +50,13 @@ void add_recovery_chart(PageBuilder& page, const ResultView& view, const Moment&
   }
   for (ChartSeries* one : {&lost, &formed, &left})
     if (std::any_of(one->values.begin(), one->values.end(), [](double value) { return value > 0.01; })) parts.series.push_back(*one);
+  double longest = 0;  // of the bars; more than 100 only while what was held in vessels comes out
+  for (std::size_t e = 0; e < metals; ++e) {
+    double sum = 0;
+    for (const ChartSeries& one : parts.series) sum += std::isfinite(one.values[e]) ? one.values[e] : 0;
+    longest = std::max(longest, sum);
+  }
+  if (longest < 100.5) parts.y.max = 100;
   chart.views.push_back(parts);
   page.chart(chart);
 }

@@ -24,6 +24,8 @@ class TableShelf {
   std::vector<ResultTable> tables_;
 };
 
+// Lines "kind: text": those about harm to people first and apart.
+void add_caution_boxes(PageBuilder& page, const std::vector<std::string>& lines);
 // Failure text, hazards and other cautions.
 void add_cautions(PageBuilder& page, const ResultView& view);
 // "All balances close to 3e-15", from the worst of the closures; nothing where there are none.
@@ -53,5 +55,7 @@ void add_beaker(PageBuilder& page, const ResultView& view);
 void add_ladder(PageBuilder& page, const ResultView& view);
 void add_campaign(PageBuilder& page, const CampaignResult& campaign);
 void add_effects(PageBuilder& page, const CampaignResult& campaign);
+std::string with_unit(const std::string& name, const std::string& unit);  // "name, unit"; the name alone without one
+std::size_t rank_column(const CampaignResult& campaign);                  // which watched result is ranked by; their number: none
 
 }  // namespace leat

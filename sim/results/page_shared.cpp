@@ -75,15 +75,21 @@ void TableShelf::take_rest(PageBuilder& page) {
   tables_.clear();
 }
 
-void add_cautions(PageBuilder& page, const ResultView& view) {
-  if (const std::string failure = view.text("failure"); !failure.empty())
-    page.html("<div class=\"failure\" role=\"note\"><strong>Not all is there:</strong> " + escaped(failure) + "</div>\n");
-  std::istringstream lines(find_texts(view.results(), "cautions_in_short") ? view.text("cautions_in_short") : view.text("cautions"));
+void add_caution_boxes(PageBuilder& page, const std::vector<std::string>& lines) {
   std::vector<std::string> grave, other;
-  for (std::string line; std::getline(lines, line);)
+  for (const std::string& line : lines)
     if (!line.empty()) (is_hazard(line) ? grave : other).push_back(line);
   if (!grave.empty()) page.html("<div class=\"hazards\" role=\"note\"><h3>Hazards</h3>\n" + list_html(grave) + "</div>\n");
   if (!other.empty()) page.html("<div class=\"cautions\" role=\"note\"><h3>Cautions</h3>\n" + list_html(other) + "</div>\n");
+}
+
+void add_cautions(PageBuilder& page, const ResultView& view) {
+  if (const std::string failure = view.text("failure"); !failure.empty())
+    page.html("<div class=\"failure\" role=\"note\"><strong>Not all is there:</strong> " + escaped(failure) + "</div>\n");
+  std::istringstream text(find_texts(view.results(), "cautions_in_short") ? view.text("cautions_in_short") : view.text("cautions"));
+  std::vector<std::string> lines;
+  for (std::string line; std::getline(text, line);) lines.push_back(line);
+  add_caution_boxes(page, lines);
 }
 
 std::string closure_words(const ResultView& view) {

@@ -31,6 +31,14 @@ std::vector<ColumnLook> looks_of(const ResultTable& table) {
   return looks;
 }
 
+// A path may break into lines after each of its points.
+std::string header_html(const std::string& header) {
+  std::string html = escaped(header);
+  if (header.find(' ') != std::string::npos) return html;
+  for (std::size_t at = html.find('.'); at != std::string::npos; at = html.find('.', at + 6)) html.insert(at + 1, "<wbr>");
+  return html;
+}
+
 // Numbers in full for sorting, as they are in the file.
 std::string cell_html(const PageTable& page, std::size_t row, std::size_t column, const ColumnLook& look) {
   const auto& cell = page.table.rows[row][column];
@@ -109,7 +117,7 @@ void PageBuilder::table(const PageTable& page) {
   body_ += "<thead><tr>";
   for (std::size_t k = 0; k < table.columns.size(); ++k)
     body_ +=
-        fmt::format("<th scope=\"col\"{}>{}{}</th>", looks[k].numeric ? " class=\"n\"" : "", escaped(table.columns[k].header),
+        fmt::format("<th scope=\"col\"{}>{}{}</th>", looks[k].numeric ? " class=\"n\"" : "", header_html(table.columns[k].header),
                     table.columns[k].unit.empty() || table.columns[k].unit == "1" ? "" : "<small>" + escaped(table.columns[k].unit) + "</small>");
   body_ += "</tr></thead>\n<tbody>\n";
   for (std::size_t row : picked(table.rows.size(), page.most)) {

@@ -19,6 +19,7 @@ std::vector<std::string> table_names(const std::string& kind) {
   if (kind == "run") return {"streams", "stages", "recovery", "metals", "reagents", "history", "closure"};
   if (kind == "beaker") return {"steps", "dissolved", "holders", "saturation", "closure"};
   if (kind == "ladder") return {"ladder", "distribution", "failures"};
+  if (kind == "campaign") return {"status", "ranking", "failures", "cases"};
   return {};
 }
 

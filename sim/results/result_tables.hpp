@@ -25,7 +25,7 @@ struct ResultTable {
 // std::logic_error for another kind.
 std::vector<ResultTable> tables_of(const ResultSet& results);
 
-// Names that tables_of may give for a kind, in order: run, beaker, ladder.
+// Names that tables_of may give for a kind, in order: run, beaker, ladder, campaign.
 std::vector<std::string> table_names(const std::string& kind);
 
 }  // namespace leat

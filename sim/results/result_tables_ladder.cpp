@@ -128,7 +128,7 @@ ResultTable rung_table(const ResultView& view) {
   add_shares(view, "stream", "reagent_consumption", "", "kg/t solids", 1000, table);
   table.columns.push_back({"beside", ""});
   for (std::size_t r = 0; r < rungs_of(view); ++r) table.rows[r].push_back(solids_of(view, r));
-  table.note = "beside: solids present; what is dissolved of their metals is the solubility there";
+  table.note = "beside: solids at equilibrium with this liquor; what is dissolved of their metals is the solubility there";
   return table;
 }
 

@@ -144,7 +144,9 @@ SolveReport whole(CircuitEquations& equations, std::vector<double>& y, const Sca
   KinsolSettings settings;
   settings.tolerance = 1e-11;
   settings.most_iterations = 200;
+  const std::vector<double> begun = y;
   SolveReport report = solver.solve(y, settings, scales.unknown, scales.residual, scales.positive);
+  if (!report.ok && !std::isfinite(report.largest_residual)) y = begun;  // where nothing can be evaluated nothing can go on
   if (report.ok || !(report.largest_residual < close_by)) return report;
   // Near the solution a content that is used up (oxygen of a starved tank) lies on its constraint and stops every step:
   // the last ones are taken without, and looked at afterwards.
@@ -161,7 +163,7 @@ SolveReport whole(CircuitEquations& equations, std::vector<double>& y, const Sca
   return report;
 }
 
-// The long way: let time pass from where the sweeps ended.
+// The long way: let time pass from where the last attempt ended.
 bool pass_time(CircuitEquations& equations, std::vector<double>& y) {
   const Circuit& circuit = equations.circuit();
   double horizon = 0;
@@ -230,8 +232,6 @@ SteadyReport solve_steady(CircuitEquations& equations, std::vector<double>& y) {
   for (report.sweeps = 0; report.sweeps < first_sweeps; ++report.sweeps)
     report.stages = sweep(equations, y, scales, report.sweeps == 0);
   report.circuit = whole(equations, y, scales);
-  if (!report.circuit.ok && !report.stages.ok && report.stages.message.find("not finite") != std::string::npos)
-    report.circuit.message = report.stages.message;  // what a later vessel says of it is a consequence
   // Metals fill the returns only slowly: sweeps are cheap beside letting time pass.
   for (int round = 0; round < more_rounds && !report.circuit.ok && !y.empty(); ++round) {
     for (int k = 0; k < round_sweeps; ++k, ++report.sweeps) report.stages = sweep(equations, y, scales, false);
@@ -241,6 +241,8 @@ SteadyReport solve_steady(CircuitEquations& equations, std::vector<double>& y) {
     report.through_time = true;
     report.circuit = whole(equations, y, scales);
   }
+  if (!report.circuit.ok && !report.stages.ok && report.stages.message.find("not finite") != std::string::npos)
+    report.circuit.message = report.stages.message;  // what a later vessel says of it is a consequence
   if (report.circuit.ok) {
     std::vector<double> rates(y.size());
     equations.rates(y, rates);

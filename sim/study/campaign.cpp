@@ -22,7 +22,10 @@ namespace leat {
 
 namespace files = std::filesystem;
 
-std::string cases_folder(const std::string& ledger) { return files::path(ledger).replace_extension(".cases").string(); }
+std::string cases_folder(const std::string& ledger) {
+  constexpr std::string_view ending = ".ledger";
+  return (ledger.ends_with(ending) ? ledger.substr(0, ledger.size() - ending.size()) : ledger) + ".cases";
+}
 std::string results_file_name(int number) { return fmt::format("{:06}.h5", number); }
 
 namespace {
@@ -62,7 +65,7 @@ class CampaignRunner {
   PoolSettings pool_settings() const;
   std::string solve(int task) const;
   bool know_watched();
-  std::optional<CaseAnswer> trial(int last);
+  std::vector<CaseAnswer> trials(const std::vector<int>& numbers);
   void make_folder() const;
   void create(CampaignResult& wanted) const;
   bool resume(const CampaignResult& wanted);
@@ -107,35 +110,45 @@ std::string CampaignRunner::solve(int task) const {
   return to_bytes(work_.solve(text, file));
 }
 
-// Whether all watched names are names of the results, before anything is written. Where neither the base case nor one of
-// the first cases is solved nobody can tell, and the campaign goes on.
+// Whether all watched names are names of the results, before anything is written. What the base case has not, a case may
+// have: a tank more. Where neither the base case nor one of those looked at is solved nobody can tell, and the campaign goes on.
 bool CampaignRunner::know_watched() {
-  std::optional<CaseAnswer> answer = trial(0);
-  if (!answer) answer = trial(static_cast<int>(std::min<long long>(most_trials, case_count(spec_))));
+  const auto lacks = [](const CaseAnswer& answer) {
+    return std::any_of(answer.watched.begin(), answer.watched.end(), [](const WatchedValue& one) { return !one.missing.empty(); });
+  };
+  std::vector<CaseAnswer> answers = trials({0});
+  if (answers.empty() || lacks(answers.front())) {
+    const int count = static_cast<int>(case_count(spec_));
+    std::set<int> more = {count};
+    for (int number = 1; number <= std::min(most_trials, count); ++number) more.insert(number);
+    for (CaseAnswer& one : trials({more.begin(), more.end()})) answers.push_back(std::move(one));
+  }
   if (stop()) {
     outcome_.ending = CampaignOutcome::stopped;
     outcome_.trouble = "stopped before the first case; nothing was written";
     return false;
   }
-  if (!answer) return true;
+  if (answers.empty()) return true;
   for (std::size_t k = 0; k < spec_.watch.size(); ++k) {
-    if (!answer->watched[k].missing.empty()) outcome_.faults.fault(Code::unknown_name, spec_.watch_places[k], answer->watched[k].missing);
-    units_.push_back(answer->watched[k].unit);
-    meanings_.push_back(answer->watched[k].meaning);
+    const auto has = std::find_if(answers.begin(), answers.end(), [&](const CaseAnswer& one) { return one.watched[k].missing.empty(); });
+    const WatchedValue& found = has == answers.end() ? answers.front().watched[k] : has->watched[k];
+    if (has == answers.end()) outcome_.faults.fault(Code::unknown_name, spec_.watch_places[k], found.missing);
+    units_.push_back(found.unit);
+    meanings_.push_back(found.meaning);
   }
   outcome_.ending = outcome_.faults.ok() ? CampaignOutcome::finished : CampaignOutcome::refused;
   return outcome_.faults.ok();
 }
 
-// The base case (last = 0), or the first of the cases up to `last` that is solved.
-std::optional<CaseAnswer> CampaignRunner::trial(int last) {
-  std::optional<CaseAnswer> found;
-  int at = last == 0 ? 0 : 1;
-  pool_.run({[&]() -> std::optional<int> { return found || at > last ? std::nullopt : std::optional(trial_of(at++)); },
+// Those of some cases that are solved, in the order in which they end; number 0 is the base case.
+std::vector<CaseAnswer> CampaignRunner::trials(const std::vector<int>& numbers) {
+  std::vector<CaseAnswer> found;
+  std::size_t at = 0;
+  pool_.run({[&]() -> std::optional<int> { return at == numbers.size() ? std::nullopt : std::optional(trial_of(numbers[at++])); },
              [&](const TaskOutcome& outcome) {
-               if (found || outcome.ending != TaskOutcome::answered) return;
+               if (outcome.ending != TaskOutcome::answered) return;
                CaseAnswer answer = case_answer(outcome.text);
-               if (answer.status == CaseStatus::done && answer.watched.size() == spec_.watch.size()) found = std::move(answer);
+               if (answer.status == CaseStatus::done && answer.watched.size() == spec_.watch.size()) found.push_back(std::move(answer));
              },
              [this] { return stop(); },
              {}});
@@ -178,8 +191,13 @@ bool CampaignRunner::resume(const CampaignResult& wanted) {
     meanings_ = held.watch_meanings;
   }
   total_ = static_cast<int>(held.cases.size());
+  const files::path folder = files::path(settings_.ledger).parent_path();
+  std::vector<int> gone;  // their results file is not there any more
+  for (const CampaignCase& one : held.cases)
+    if (!one.results_file.empty() && !files::exists(folder / one.results_file)) gone.push_back(one.number);
+  ledger_->wait_again(gone);
   for (const CampaignCase& one : held.cases) {
-    if (one.status == CaseStatus::waiting || again.contains(one.status)) {
+    if (one.status == CaseStatus::waiting || again.contains(one.status) || std::binary_search(gone.begin(), gone.end(), one.number)) {
       waiting_.push_back(one.number);
     } else {
       ++finished_;
@@ -241,6 +259,7 @@ CaseRecord CampaignRunner::record_of(const TaskOutcome& outcome) {
     row.watched.push_back(one.value);
     record.missing.push_back(one.missing);
   }
+  row.cautions = answer.cautions;
   row.watched.resize(spec_.watch.size(), std::numeric_limits<double>::quiet_NaN());
   record.missing.resize(spec_.watch.size());
   const auto named = [](const WatchedValue& one) { return one.missing.empty(); };
@@ -262,7 +281,11 @@ void CampaignRunner::judge(const TaskOutcome& outcome, CampaignCase& row, CaseAn
   };
   switch (outcome.ending) {
     case TaskOutcome::answered:
-      answer = case_answer(outcome.text);
+      try {
+        answer = case_answer(outcome.text);
+      } catch (const std::logic_error&) {
+        return is(CaseStatus::crashed, "its answer cannot be read");
+      }
       if (answer.status != CaseStatus::done) answer.watched.clear();
       return is(answer.status, answer.status == CaseStatus::done ? "" : answer.reason);
     case TaskOutcome::threw: return is(CaseStatus::crashed, "a fault of leat itself: " + outcome.text);

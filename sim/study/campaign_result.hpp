@@ -19,6 +19,7 @@ struct CampaignCase {
   double seconds = 0;                // [s]
   std::vector<double> watched;       // one a watched name; NaN where there is none
   std::string results_file;          // from the ledger's folder; empty if none is kept
+  std::string cautions;              // of the case, a line each: "kind: text"
   std::string page;                  // from the page's folder; empty if there is none
 };
 
@@ -32,7 +33,12 @@ struct CampaignResult {
   bool largest_first = true;
   std::string shard;                         // "2/3", empty for a whole campaign
   std::vector<CampaignCase> cases;           // by number
+  std::vector<std::string> cautions;         // of all cases, one line a kind with the number of cases; the sentence on safety last
   std::string digest;                        // of all cases but their seconds
 };
+
+// One line a kind of caution: that of the first case that has it, and how many have it. A sentence that all cases with
+// cautions end with stands last, once.
+std::vector<std::string> cautions_of(const std::vector<CampaignCase>& cases);
 
 }  // namespace leat

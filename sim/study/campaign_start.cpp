@@ -3,6 +3,7 @@
 #include <fmt/format.h>
 #include <fmt/ranges.h>
 
+#include <filesystem>
 #include <map>
 
 namespace leat {
@@ -10,7 +11,7 @@ namespace leat {
 CampaignResult waiting_campaign(const CampaignSpec& spec, const CampaignWork& work, const CampaignSettings& settings) {
   CampaignResult campaign;
   campaign.title = spec.title;
-  campaign.file = spec.file;
+  campaign.file = std::filesystem::path(spec.file).filename().string();
   campaign.program = settings.program;
   campaign.campaign_text = spec.text;
   campaign.base_file = spec.base.file;
@@ -68,6 +69,7 @@ std::vector<std::string> differences(const CampaignResult& ledger, const LedgerT
   const auto listed = [](const std::vector<std::string>& names) { return fmt::format("{}", fmt::join(names, ", ")); };
   const auto yes = [](bool value) { return std::string(value ? "true" : "false"); };
   compare("the program", ledger.program, wanted.program);
+  compare("the file of the case", ledger.base_file, wanted.base_file);
   compare("the version of the results format", ledger_terms.results_format, terms.results_format);
   compare("what is varied", listed(ledger.paths), listed(wanted.paths));
   compare("watch", listed(ledger.watch), listed(wanted.watch));

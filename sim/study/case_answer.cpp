@@ -42,6 +42,7 @@ std::string to_bytes(const CaseAnswer& answer) {
   put(bytes, &status, sizeof status);
   put(bytes, &answer.file_written, 1);
   put(bytes, answer.reason);
+  put(bytes, answer.cautions);
   put(bytes, &count, sizeof count);
   for (const WatchedValue& one : answer.watched) {
     put(bytes, &one.value, sizeof one.value);
@@ -56,7 +57,9 @@ CaseAnswer case_answer(std::string_view bytes) {
   CaseAnswer answer;
   answer.status = static_cast<CaseStatus>(take<std::int32_t>(bytes));
   answer.file_written = take<char>(bytes) != 0;
+  check(answer.status >= CaseStatus::waiting && answer.status <= CaseStatus::machine_trouble, "a worker's answer has no status");
   answer.reason = take_text(bytes);
+  answer.cautions = take_text(bytes);
   for (auto left = take<std::uint64_t>(bytes); left > 0; --left) {
     WatchedValue one;
     one.value = take<double>(bytes);

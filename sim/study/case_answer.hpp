@@ -21,6 +21,7 @@ struct CaseAnswer {
   CaseStatus status = CaseStatus::done;  // done, input_fault, not_solved or machine_trouble
   std::string reason;                    // why it is not done
   std::vector<WatchedValue> watched;     // one a watched name if done
+  std::string cautions;                  // of its results, a line each
   bool file_written = false;             // its results file is in place
 };
 

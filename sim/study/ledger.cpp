@@ -24,7 +24,8 @@ CREATE TABLE campaign(name TEXT PRIMARY KEY, value TEXT NOT NULL) WITHOUT ROWID;
 CREATE TABLE varied(position INTEGER PRIMARY KEY, path TEXT NOT NULL, unit TEXT NOT NULL);
 CREATE TABLE watched(position INTEGER PRIMARY KEY, name TEXT NOT NULL, unit TEXT NOT NULL, meaning TEXT NOT NULL);
 CREATE TABLE cases(number INTEGER PRIMARY KEY, hash TEXT NOT NULL, status TEXT NOT NULL, reason TEXT NOT NULL DEFAULT '',
-                   reason_group TEXT NOT NULL DEFAULT '', seconds REAL NOT NULL DEFAULT 0, results_file TEXT NOT NULL DEFAULT '');
+                   reason_group TEXT NOT NULL DEFAULT '', seconds REAL NOT NULL DEFAULT 0, results_file TEXT NOT NULL DEFAULT '',
+                   cautions TEXT NOT NULL DEFAULT '');
 CREATE TABLE inputs(number INTEGER NOT NULL REFERENCES cases, path TEXT NOT NULL, value TEXT NOT NULL, PRIMARY KEY(number, path)) WITHOUT ROWID;
 CREATE TABLE results(number INTEGER NOT NULL REFERENCES cases, watched TEXT NOT NULL, value REAL, missing TEXT NOT NULL DEFAULT '',
                      PRIMARY KEY(number, watched)) WITHOUT ROWID;
@@ -143,7 +144,7 @@ std::map<std::string, std::size_t> positions(const std::vector<Value>& names) {
 
 void read_cases(LedgerDatabase& database, CampaignResult& campaign) {
   std::map<long long, std::size_t> of;
-  Statement cases(database, "SELECT number, hash, status, reason, reason_group, seconds, results_file FROM cases ORDER BY number");
+  Statement cases(database, "SELECT number, hash, status, reason, reason_group, seconds, results_file, cautions FROM cases ORDER BY number");
   while (cases.step()) {
     CampaignCase one;
     one.number = static_cast<int>(cases.integer(0));
@@ -153,6 +154,7 @@ void read_cases(LedgerDatabase& database, CampaignResult& campaign) {
     one.reason_group = cases.text(4);
     one.seconds = cases.number(5);
     one.results_file = cases.text(6);
+    one.cautions = cases.text(7);
     one.inputs.resize(campaign.paths.size());
     one.watched.assign(campaign.watch.size(), std::numeric_limits<double>::quiet_NaN());
     of[one.number] = campaign.cases.size();
@@ -199,6 +201,8 @@ void Ledger::create(const std::string& path, const CampaignResult& campaign, con
     files::remove(unready + "-journal", error);
     throw;
   }
+  // A killed campaign's log may lie beside a ledger that was taken away since; it must not be read into the new one.
+  for (const char* left : {"-wal", "-shm", "-journal"}) files::remove(path + left, error);
   files::rename(unready, path, error);
   if (error) throw LedgerTrouble(LedgerTrouble::machine, fmt::format("{}: {}", path, error.message()));
 }
@@ -219,6 +223,7 @@ CampaignResult Ledger::contents() const {
   read_cases(parts_->database, campaign);
   parts_->database.run("COMMIT");
   campaign.digest = campaign_digest(campaign);
+  campaign.cautions = cautions_of(campaign.cases);
   return campaign;
 }
 
@@ -238,8 +243,8 @@ void Ledger::record(const CaseRecord& record) {
   LedgerDatabase& database = parts_->database;
   const CampaignCase& row = record.row;
   LedgerTransaction transaction(database);
-  Statement(database, "UPDATE cases SET status = ?, reason = ?, reason_group = ?, seconds = ?, results_file = ? WHERE number = ?")
-      .bind(to_string(row.status)).bind(row.reason).bind(row.reason_group).bind(row.seconds).bind(row.results_file).bind(static_cast<long long>(row.number)).step();
+  Statement(database, "UPDATE cases SET status = ?, reason = ?, reason_group = ?, seconds = ?, results_file = ?, cautions = ? WHERE number = ?")
+      .bind(to_string(row.status)).bind(row.reason).bind(row.reason_group).bind(row.seconds).bind(row.results_file).bind(row.cautions).bind(static_cast<long long>(row.number)).step();
   Statement(database, "DELETE FROM results WHERE number = ?").bind(static_cast<long long>(row.number)).step();
   Statement watched(database, "SELECT name FROM watched ORDER BY position");
   Statement result(database, "INSERT INTO results VALUES(?, ?, ?, ?)");
@@ -256,7 +261,19 @@ void Ledger::wait_again(const std::set<CaseStatus>& statuses) {
   for (const CaseStatus status : statuses) {
     const std::string word = to_string(status);
     Statement(database, "DELETE FROM results WHERE number IN (SELECT number FROM cases WHERE status = ?)").bind(word).step();
-    Statement(database, "UPDATE cases SET status = 'waiting', reason = '', reason_group = '', seconds = 0, results_file = '' WHERE status = ?").bind(word).step();
+    Statement(database, "UPDATE cases SET status = 'waiting', reason = '', reason_group = '', seconds = 0, results_file = '', cautions = '' WHERE status = ?").bind(word).step();
+  }
+  transaction.commit();
+}
+
+void Ledger::wait_again(const std::vector<int>& numbers) {
+  LedgerTransaction transaction(parts_->database);
+  Statement results(parts_->database, "DELETE FROM results WHERE number = ?");
+  Statement cases(parts_->database,
+                  "UPDATE cases SET status = 'waiting', reason = '', reason_group = '', seconds = 0, results_file = '', cautions = '' WHERE number = ?");
+  for (const int number : numbers) {
+    results.bind(static_cast<long long>(number)).step();
+    cases.bind(static_cast<long long>(number)).step();
   }
   transaction.commit();
 }

@@ -1,7 +1,7 @@
 // Ledger: what became of every case of a campaign, in one SQLite file that the sqlite3 shell reads.
 //   campaign(name, value)       facts: kind, format_version, program, title, file, text, base_file, base_text, digest ...
 //   varied(position, path, unit)         watched(position, name, unit, meaning)
-//   cases(number, hash, status, reason, reason_group, seconds, results_file)
+//   cases(number, hash, status, reason, reason_group, seconds, results_file, cautions)
 //   inputs(number, path, value)          results(number, watched, value, missing)     missing: why there is no value
 //   overview                             a view: a row a case with its inputs and watched values side by side
 // All cases stand there as `waiting` from the first moment: the file appears whole, under a temporary name until then. Then
@@ -54,6 +54,7 @@ class Ledger {
 
   void record(const CaseRecord& record);                // one transaction
   void wait_again(const std::set<CaseStatus>& statuses);// back to waiting, as if never done
+  void wait_again(const std::vector<int>& numbers);     // the same by case
   void set_watched(const std::vector<std::string>& units, const std::vector<std::string>& meanings);
   void set_facts(const CampaignResult& campaign);       // title, file, text and ranking, which may change
   void set_digest(const std::string& digest);

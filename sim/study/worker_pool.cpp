@@ -107,13 +107,13 @@ void WorkerPool::wait_and_read(const PoolCalls& calls) {
   const auto lost = Clock::now() - before;
   for (std::size_t k = 0; k < of.size(); ++k) {
     if (Seconds(lost).count() > asleep) of[k]->since += lost;  // a sleep of the machine or a stopped job is nobody's time
-    look_after(*of[k], polled[k].revents != 0, calls);
+    look_after(*of[k], calls);
   }
 }
 
 // One seat: its answer, its worker's end or its time.
-void WorkerPool::look_after(Seat& seat, bool readable, const PoolCalls& calls) {
-  const bool open = !readable || seat.worker->receive();
+void WorkerPool::look_after(Seat& seat, const PoolCalls& calls) {
+  const bool open = seat.worker->receive();  // does not wait; an answer may have come while another's was told
   if (const auto message = seat.worker->message(); message && seat.task != 0) {
     static constexpr TaskOutcome::Ending endings[] = {TaskOutcome::answered, TaskOutcome::threw, TaskOutcome::out_of_memory, TaskOutcome::trouble};
     const TaskOutcome outcome{seat.task, endings[std::clamp<int>(message->kind, 0, 3)], message->text, 0, 0};

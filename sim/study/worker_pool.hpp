@@ -64,7 +64,7 @@ class WorkerPool {
   void fill_seats();
   void hand_out(const PoolCalls& calls);
   void wait_and_read(const PoolCalls& calls);
-  void look_after(Seat& seat, bool readable, const PoolCalls& calls);
+  void look_after(Seat& seat, const PoolCalls& calls);
   void ended(Seat& seat, const PoolCalls& calls);
   void tell(Seat& seat, TaskOutcome outcome, const PoolCalls& calls);
   int under_way() const;

@@ -32,7 +32,7 @@ of: 1_ammine_residue.yaml
 vary:
   streams.wash.rate: 2 m3/h to 6 m3/h in 3 points
   circuit.L.tanks: [1, 2]
-  circuit.split.recycle: [10 %, 120 %]      # the second is a fault
+  solids.residue.phases.hematite: [42 %, 99 %]      # with the other minerals the second passes 100 %: a fault of the case
 watch: [recovery.Ag, recovery.Cu, ph.L.1]
 rank: {by: recovery.Ag, best: largest}
 through_time: false
@@ -112,7 +112,8 @@ class Pages(unittest.TestCase):
             raise AssertionError("chromium is needed to open the pages")
         cls.folder = tempfile.mkdtemp(prefix="leat-pages-")
         for name in os.listdir(FLOWSHEETS):
-            shutil.copy(os.path.join(FLOWSHEETS, name), cls.folder)
+            if os.path.isfile(os.path.join(FLOWSHEETS, name)):
+                shutil.copy(os.path.join(FLOWSHEETS, name), cls.folder)
         for name in CIRCUITS:
             leat(cls.folder, "run", f"{name}.yaml", "--out", f"{name}.h5")
             leat(cls.folder, "report", f"{name}.h5")

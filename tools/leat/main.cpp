@@ -61,9 +61,9 @@ void add_study_verbs(CLI::App& app, Words& words, std::vector<Verb>& verbs) {
   verbs.push_back({ladder, &words.ladder, [&] { return ladder_verb(words.ladder); }});
   CLI::App* campaign = add_verb(app, "campaign", "solve many variants of a case in parallel; what is done stays done", words.campaign, "campaign file");
   campaign->add_option("--shard", words.campaign.shard, "I/N: only the I-th of N parts, for clusters")->type_name("I/N");
-  campaign->add_option("--merge", words.campaign.merge, "ledgers of shards, to be put into one")->type_name("LEDGER ...");
-  campaign->add_option("--workers", words.campaign.workers, "cases solved at once; default one a core")->check(CLI::Range(1, 1024));
-  campaign->add_flag("--retry", words.campaign.retry, "solve crashed and timed-out cases once more");
+  campaign->add_option("--merge", words.campaign.merge, "ledgers of shards, to be put into one")->type_name("LEDGER ...")->excludes("--shard");
+  campaign->add_option("--workers", words.campaign.workers, "cases solved at once; default one a core")->check(CLI::Range(1, 1024))->excludes("--merge");
+  campaign->add_flag("--retry", words.campaign.retry, "solve crashed and timed-out cases once more")->excludes("--merge");
   add_out(campaign, words.campaign, "ledger; default outputs/NAME.ledger");
   verbs.push_back({campaign, &words.campaign, [&] { return campaign_verb(words.campaign); }});
   CLI::App* report = add_verb(app, "report", "make one HTML page of a results file, or of a campaign's ledger", words.report, "results file or ledger");

@@ -30,6 +30,18 @@ SolvedCase CaseSolver::solve(const std::string& text, const std::string& file, c
   return file_kind(text, file, unused) == "beaker" ? solve_beaker(text, file) : solve_flowsheet(text, file, settings);
 }
 
+Diagnostics CaseSolver::faults(const std::string& text, const std::string& file) const {
+  Diagnostics diagnostics, unused;
+  if (file_kind(text, file, unused) == "beaker") {
+    const auto beaker = read_beaker(text, file, catalogue_, diagnostics);
+    if (beaker && diagnostics.ok()) speciate(*beaker, library_, catalogue_, diagnostics);
+    return diagnostics;
+  }
+  const auto flowsheet = read_flowsheet(text, file, catalogue_, diagnostics);
+  if (flowsheet) build_circuit(*flowsheet, library_, catalogue_, diagnostics);
+  return diagnostics;
+}
+
 SolvedCase CaseSolver::solve_flowsheet(const std::string& text, const std::string& file, const SolveSettings& settings) const {
   Diagnostics diagnostics;
   const auto flowsheet = read_flowsheet(text, file, catalogue_, diagnostics);

@@ -33,6 +33,9 @@ class CaseSolver {
   CaseSolver();
   SolvedCase solve(const std::string& text, const std::string& file, const SolveSettings& settings = {}) const;
 
+  // What is wrong with a case's text, without solving more than that takes.
+  Diagnostics faults(const std::string& text, const std::string& file) const;
+
   const SpeciesLibrary& library() const { return library_; }
   const Catalogue& catalogue() const { return catalogue_; }
 

@@ -8,6 +8,7 @@
 
 #include "sim/input/case_text.hpp"
 #include "sim/input/read_study.hpp"
+#include "sim/results/campaign_tables.hpp"
 #include "sim/results/hdf5_file.hpp"
 #include "sim/results/result_access.hpp"
 #include "sim/results/run_layout.hpp"
@@ -19,9 +20,6 @@
 namespace leat {
 namespace {
 
-using Row = std::vector<TextTableWriter::Cell>;
-constexpr std::size_t leading = 10;  // cases of the ranking
-
 // One case, in a worker.
 CaseAnswer solve_one(const CaseSolver& solver, const CampaignSpec& spec, const std::string& text, const std::string& results_file) {
   SolveSettings settings;
@@ -31,13 +29,12 @@ CaseAnswer solve_one(const CaseSolver& solver, const CampaignSpec& spec, const s
   answer.reason = solved.failure;
   if (solved.exit == Exit::input_faults) {
     answer.status = CaseStatus::input_fault;
-    const auto faults = solved.diagnostics.sorted_faults();
-    if (!faults.empty()) answer.reason = to_string(faults.front());
-    if (faults.size() > 1) answer.reason += fmt::format(" (and {} more)", faults.size() - 1);
+    answer.reason = reason_of(solved.diagnostics);
   } else if (solved.exit != Exit::done) {
     answer.status = solved.exit == Exit::machine_trouble ? CaseStatus::machine_trouble : CaseStatus::not_solved;
   }
   if (!solved.results) return answer;
+  for (const std::string& line : lines_of(*solved.results, "cautions_in_short")) answer.cautions += line + "\n";
   if (!results_file.empty()) {
     const FileOutcome outcome = write_result_file(*solved.results, results_file);
     answer.file_written = outcome.ok;
@@ -53,6 +50,8 @@ CaseAnswer solve_one(const CaseSolver& solver, const CampaignSpec& spec, const s
   }
   return answer;
 }
+
+constexpr std::size_t most_checked = 200;  // values of one input that are tried before the start
 
 std::string duration(double seconds) {
   if (seconds < 90) return fmt::format("{:.0f} s", seconds);
@@ -82,91 +81,6 @@ class Teller {
   double told_at_ = 0;
 };
 
-std::size_t rank_column(const CampaignResult& campaign) {
-  return static_cast<std::size_t>(std::find(campaign.watch.begin(), campaign.watch.end(), campaign.rank_by) - campaign.watch.begin());
-}
-
-// Those done, best first; equal ones and those without a value by number.
-std::vector<const CampaignCase*> ranked(const CampaignResult& campaign) {
-  std::vector<const CampaignCase*> order;
-  for (const CampaignCase& one : campaign.cases)
-    if (one.status == CaseStatus::done) order.push_back(&one);
-  const std::size_t by = rank_column(campaign);
-  if (by >= campaign.watch.size()) return order;
-  const auto worth = [&](const CampaignCase* one) {
-    const double value = one->watched[by];
-    return std::isnan(value) ? -INFINITY : campaign.largest_first ? value : -value;
-  };
-  std::stable_sort(order.begin(), order.end(), [&](const CampaignCase* a, const CampaignCase* b) { return worth(a) > worth(b); });
-  return order;
-}
-
-ResultTable status_table(const CampaignResult& campaign) {
-  std::map<CaseStatus, int> counts;
-  for (const CampaignCase& one : campaign.cases) ++counts[one.status];
-  ResultTable table{"status", "Cases by status", {{"status", ""}, {"cases", ""}}, {}, ""};
-  for (const auto& [status, count] : counts) table.rows.push_back({to_string(status), std::to_string(count)});
-  return table;
-}
-
-void add_columns(ResultTable& table, const CampaignResult& campaign) {
-  for (std::size_t k = 0; k < campaign.watch.size(); ++k) table.columns.push_back({campaign.watch[k], campaign.watch_units[k]});
-  for (const std::string& path : campaign.paths) table.columns.push_back({path, ""});
-}
-
-void add_values(Row& row, const CampaignCase& one) {
-  for (const double value : one.watched) row.emplace_back(value);
-  for (const std::string& value : one.inputs) row.emplace_back(value);
-}
-
-ResultTable ranking_table(const CampaignResult& campaign) {
-  const std::string order = campaign.rank_by.empty() ? "number" : fmt::format("{}, {} first", campaign.rank_by, campaign.largest_first ? "largest" : "smallest");
-  ResultTable table{"ranking", "Leading cases by " + order, {{"case", ""}}, {}, ""};
-  add_columns(table, campaign);
-  for (const CampaignCase* one : ranked(campaign)) {
-    if (table.rows.size() == leading) break;
-    Row row = {std::to_string(one->number)};
-    add_values(row, *one);
-    table.rows.push_back(std::move(row));
-  }
-  return table;
-}
-
-ResultTable failures_table(const CampaignResult& campaign) {
-  struct Group {
-    int count = 0;
-    const CampaignCase* first = nullptr;
-  };
-  std::map<std::pair<CaseStatus, std::string>, Group> groups;
-  for (const CampaignCase& one : campaign.cases) {
-    if (one.status == CaseStatus::done || one.status == CaseStatus::waiting) continue;
-    Group& group = groups[{one.status, one.reason_group}];
-    if (group.count++ == 0) group.first = &one;
-  }
-  std::vector<Group> order;
-  for (const auto& [key, group] : groups) order.push_back(group);
-  std::stable_sort(order.begin(), order.end(), [](const Group& a, const Group& b) { return a.count > b.count; });
-  ResultTable table{"failures", "Cases that are not done, by reason", {{"status", ""}, {"cases", ""}, {"first case", ""}, {"reason of the first", ""}}, {}, ""};
-  for (const Group& group : order)
-    table.rows.push_back({to_string(group.first->status), std::to_string(group.count), std::to_string(group.first->number), group.first->reason});
-  return table;
-}
-
-ResultTable cases_table(const CampaignResult& campaign) {
-  ResultTable table{"cases", "All cases", {{"case", ""}, {"status", ""}}, {}, ""};
-  add_columns(table, campaign);
-  for (const TableColumn& column : {TableColumn{"time", "s"}, {"reason", ""}, {"results file", ""}}) table.columns.push_back(column);
-  for (const CampaignCase& one : campaign.cases) {
-    Row row = {std::to_string(one.number), to_string(one.status)};
-    add_values(row, one);
-    row.emplace_back(one.seconds);
-    row.emplace_back(one.reason);
-    row.emplace_back(one.results_file);
-    table.rows.push_back(std::move(row));
-  }
-  return table;
-}
-
 // Watched names that solved cases do not have: how many of them, and why the first.
 void add_missing(const Ledger& ledger, const CampaignResult& campaign, Answer& answer) {
   const auto missing = ledger.missing();
@@ -186,8 +100,8 @@ void add_contents(const std::string& path, const Manner& manner, Answer& answer)
   const Ledger ledger(path, false);
   const CampaignResult campaign = ledger.contents();
   answer.title = campaign.title;
-  answer.tables = {status_table(campaign), ranking_table(campaign), failures_table(campaign)};
-  if (manner.json || !manner.csv.empty()) answer.tables.push_back(cases_table(campaign));
+  answer.tables = tables_of(campaign);
+  if (!manner.json && manner.csv.empty()) answer.tables.pop_back();  // all cases: for machines
   const auto count = [&](CaseStatus status) { return std::count_if(campaign.cases.begin(), campaign.cases.end(), [&](const auto& one) { return one.status == status; }); };
   const auto done = count(CaseStatus::done), waiting = count(CaseStatus::waiting);
   const auto total = static_cast<std::ptrdiff_t>(campaign.cases.size());
@@ -200,6 +114,7 @@ void add_contents(const std::string& path, const Manner& manner, Answer& answer)
     answer.failure = "not one case was solved";
   }
   add_missing(ledger, campaign, answer);
+  answer.cautions.insert(answer.cautions.end(), campaign.cautions.begin(), campaign.cautions.end());
   answer.written.emplace_back("ledger", path);
   std::error_code unused;
   if (std::filesystem::is_directory(cases_folder(path), unused)) answer.written.emplace_back("results files of the cases", cases_folder(path));
@@ -215,13 +130,13 @@ bool read_settings(const CampaignArguments& arguments, CampaignSettings& setting
   }
   const std::string part = settings.shard.whole() ? "" : fmt::format(".{}-of-{}", settings.shard.index, settings.shard.of);
   settings.ledger = arguments.out.empty() ? default_output(arguments.file, part + ".ledger") : arguments.out;
-  settings.program = program_name();
+  settings.program = program_identity();
   settings.results_format = format_version;
   settings.workers = arguments.workers;
   settings.retry = arguments.retry;
   settings.stop = stop_asked;
   if (!answer.failure.empty()) answer.exit_code = Exit::usage;
-  return answer.failure.empty() && knows_csv(arguments.manner, {"status", "ranking", "failures", "cases"}, answer);
+  return answer.failure.empty() && knows_csv(arguments.manner, table_names("campaign"), answer);
 }
 
 void take_outcome(const CampaignOutcome& outcome, bool merged, Answer& answer) {
@@ -239,8 +154,38 @@ void take_outcome(const CampaignOutcome& outcome, bool merged, Answer& answer) {
                                        outcome.workers == 1 ? "" : "s", outcome.solved_now / std::max(outcome.seconds, 1e-3)));
 }
 
+// Values that cannot stand where they go, each tried alone in the base case: a unit left out, a word unknown. What only goes
+// wrong together with others (shares that pass 100 %) is the case's own fault, and its row's.
+void check_values(const CampaignSpec& spec, const CaseText& base, const CaseSolver& solver, Diagnostics& faults) {
+  std::map<std::string, std::pair<Place, std::vector<std::string>>> values;
+  for (const VariedInput& one : spec.grid) values[one.path] = {one.place, one.values};
+  for (const Inputs& row : spec.listed)
+    for (const auto& [path, value] : row) {
+      auto& [place, listed] = values[path];
+      place.file = spec.file;
+      if (listed.size() < most_checked && std::find(listed.begin(), listed.end(), value) == listed.end()) listed.push_back(value);
+    }
+  for (const auto& [path, of] : values)
+    for (std::size_t k = 0; k < std::min(of.second.size(), most_checked); ++k) {
+      const std::pair<std::string, std::string> input{path, of.second[k]};
+      const Diagnostics found = solver.faults(base.with({&input, 1}), base_name(spec.base.file));
+      for (const Diagnostic& fault : found.faults())
+        if (fault.place.key == path) {
+          Place place = of.first;
+          place.key = path;
+          faults.fault(fault.code, place, fmt::format("'{}': {}", of.second[k], fault.text));
+        }
+    }
+}
+
 CampaignOutcome solve_all(const CampaignSpec& spec, const CaseText& base, CampaignSettings& settings, const CampaignArguments& arguments) {
   const CaseSolver solver;
+  CampaignOutcome outcome;
+  check_values(spec, base, solver, outcome.faults);
+  if (!outcome.faults.ok()) {
+    outcome.ending = CampaignOutcome::refused;
+    return outcome;
+  }
   CampaignWork work;
   work.text = [&](const Inputs& inputs) { return base.with(inputs); };
   work.solve = [&](const std::string& text, const std::string& results_file) { return solve_one(solver, spec, text, results_file); };

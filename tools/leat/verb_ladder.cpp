@@ -36,7 +36,7 @@ class Climb {
         if (stop_asked()) break;
         progress.say(fmt::format("rung {} of {}", done_ + 1, planned_));
         const std::pair<std::string, std::string> input{series.vary.path, value};
-        take(solver.solve(text->with({&input, 1}), series.base.path, {.through_time = false, .progress = {}, .stop = {}}));
+        take(solver.solve(text->with({&input, 1}), base_name(series.base.path), {.through_time = false, .progress = {}, .stop = {}}));
       }
     }
   }
@@ -46,6 +46,7 @@ class Climb {
   std::size_t done() const { return done_; }
   std::size_t solved() const { return solved_; }
   bool all_faults() const { return done_ > 0 && faults_ == done_; }
+  const std::string& read_step() const { return read_step_; }  // of the first beaker; empty for circuits
   const Diagnostics& first_findings() const { return first_findings_; }
   const std::string& first_reason() const { return first_reason_; }
 
@@ -56,11 +57,12 @@ class Climb {
       rung.status = "solved";
       rung.results = solved.results;
       rung.cautions = solved.cautions;
+      if (const TextTable* steps = find_texts(*solved.results, "step_name"); steps && read_step_.empty())
+        read_step_ = ladder_.step.empty() ? steps->values.back() : ladder_.step;
       ++solved_;
     } else if (solved.exit == Exit::input_faults) {
-      const auto faults = solved.diagnostics.sorted_faults();
       rung.status = "input_fault";
-      rung.reason = to_string(faults.front()) + (faults.size() > 1 ? fmt::format(" (and {} more)", faults.size() - 1) : "");
+      rung.reason = reason_of(solved.diagnostics);
       if (faults_++ == 0) first_findings_ = solved.diagnostics;
     } else {
       rung.status = "not_solved";
@@ -81,15 +83,8 @@ class Climb {
   std::vector<std::vector<LadderRung>> rungs_;
   std::size_t planned_ = 0, done_ = 0, solved_ = 0, faults_ = 0;
   Diagnostics first_findings_;
-  std::string first_reason_;
+  std::string first_reason_, read_step_;
 };
-
-void add_lines(const ResultSet& results, const char* name, std::vector<std::string>& lines) {
-  const TextTable* texts = find_texts(results, name);
-  std::istringstream all(texts && !texts->values.empty() ? texts->values.front() : "");
-  for (std::string line; std::getline(all, line);)
-    if (!line.empty()) lines.push_back(line);
-}
 
 // False, with the reason said, where a file cannot be written.
 bool written(const FileOutcome& outcome, const char* what, const std::string& path, Answer& answer) {
@@ -102,9 +97,8 @@ bool written(const FileOutcome& outcome, const char* what, const std::string& pa
   return false;
 }
 
-std::string page_beside(const std::string& results) {
-  const std::string page = std::filesystem::path(results).replace_extension(".html").string();
-  return page == results ? page + ".html" : page;
+std::string output_of(const LadderArguments& arguments) {
+  return arguments.out.empty() ? default_output(arguments.file, ".ladder.h5") : arguments.out;
 }
 
 // Writes the ladder and its page, then lays it out: what is not written is not shown.
@@ -112,13 +106,14 @@ void take_ladder(const LadderSpec& ladder, const Climb& climb, const LadderArgum
   const bool stopped = climb.done() < climb.planned();
   const std::string early = stopped ? fmt::format("stopped: {} of {} rungs were looked at", climb.done(), climb.planned()) : "";
   const ResultSet results = layout_of(ladder, climb.rungs(), program_name(), early);
-  const std::string out = arguments.out.empty() ? default_output(arguments.file, ".ladder.h5") : arguments.out;
+  const std::string out = output_of(arguments);
   if (!written(write_result_file(results, out), "results", out, answer)) return;
   answer.title = attribute(results, "title");
   answer.tables = tables_of(results);
+  if (!climb.read_step().empty()) answer.lines.push_back(fmt::format("Beakers are read after the step '{}'.", climb.read_step()));
   if (climb.solved() < climb.done())
     answer.cautions.push_back(fmt::format("{} of {} rungs are not solved; the table failures says why", climb.done() - climb.solved(), climb.done()));
-  add_lines(results, "cautions_in_short", answer.cautions);
+  for (std::string& line : lines_of(results, "cautions_in_short")) answer.cautions.push_back(std::move(line));
   if (stopped) {
     answer.exit_code = Exit::machine_trouble;
     answer.failure = early;
@@ -139,6 +134,7 @@ int ladder_verb(const LadderArguments& arguments) {
   if (!take_findings(reading, answer)) return say(answer, arguments.manner);
   const auto ladder = arguments.vary.empty() ? read_ladder(text, arguments.file, reading) : ladder_of_case(text, arguments.file, arguments.vary, reading);
   if (!take_findings(reading, answer) || !knows_csv(arguments.manner, table_names("ladder"), answer)) return say(answer, arguments.manner);
+  if (!may_replace(output_of(arguments), arguments.file, answer)) return say(answer, arguments.manner);
   Climb climb(*ladder);
   climb.run();
   if (climb.solved() > 0) {

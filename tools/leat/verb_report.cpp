@@ -4,10 +4,12 @@
 #include <sstream>
 #include <stdexcept>
 
+#include "sim/results/campaign_tables.hpp"
 #include "sim/results/hdf5_file.hpp"
 #include "sim/results/page.hpp"
 #include "sim/results/result_access.hpp"
 #include "sim/results/run_layout.hpp"
+#include "sim/study/campaign.hpp"
 #include "sim/study/ledger.hpp"
 #include "tools/leat/verbs.hpp"
 
@@ -71,11 +73,6 @@ MadePage page_of_file(const std::string& path) {
   return made;
 }
 
-std::string page_beside(const std::string& file) {
-  const std::string page = std::filesystem::path(file).replace_extension(".html").string();
-  return page == file ? page + ".html" : page;
-}
-
 // False, with the reason said, where the page cannot be written.
 bool write_page(const std::string& html, const std::string& what, const std::string& path, Answer& answer) {
   const FileOutcome outcome = write_whole_file(path, std::as_bytes(std::span(html)));
@@ -103,15 +100,10 @@ int report_results(const ReportArguments& arguments, const std::string& out, Ans
   return say(answer, arguments.manner);
 }
 
-std::string six_digits(int number) {
-  std::string text = std::to_string(number);
-  return text.size() < 6 ? std::string(6 - text.size(), '0') + text : text;
-}
-
 // Pages of the leading cases that kept their results, beside the campaign's page in NAME.cases.
 bool write_case_pages(CampaignResult& campaign, const ReportArguments& arguments, const std::filesystem::path& out, Answer& answer) {
   const std::filesystem::path ledger_folder = std::filesystem::path(arguments.file).parent_path();
-  const std::filesystem::path folder = std::filesystem::path(out).replace_extension(".cases");
+  const std::filesystem::path folder = cases_folder(out.parent_path() / out.stem());
   int pages = 0;
   for (const std::size_t k : ranked_cases(campaign)) {
     if (pages == arguments.pages) break;
@@ -122,7 +114,7 @@ bool write_case_pages(CampaignResult& campaign, const ReportArguments& arguments
       answer.cautions.push_back("no page of case " + std::to_string(one.number) + ": " + made.fault);
       continue;
     }
-    const std::filesystem::path page = folder / (six_digits(one.number) + ".html");
+    const std::filesystem::path page = folder / std::filesystem::path(results_file_name(one.number)).replace_extension(".html");
     if (!write_page(made.html, "page of case " + std::to_string(one.number), page.string(), answer)) return false;
     one.page = (folder.filename() / page.filename()).string();
     ++pages;
@@ -134,8 +126,10 @@ int report_ledger(const ReportArguments& arguments, const std::string& out, Answ
   std::string fault;
   auto campaign = read_ledger(arguments.file, fault);
   if (!campaign) return refused(answer, arguments.manner, Exit::input_faults, fault);
-  if (!knows_csv(arguments.manner, {}, answer)) return say(answer, arguments.manner);
+  if (!knows_csv(arguments.manner, table_names("campaign"), answer)) return say(answer, arguments.manner);
   answer.title = campaign->title;
+  if (arguments.manner.json || !arguments.manner.csv.empty()) answer.tables = tables_of(*campaign);
+  answer.cautions = campaign->cautions;
   if (write_case_pages(*campaign, arguments, out, answer) && write_page(page_of(*campaign), "page", out, answer)) {
     answer.lines.push_back("One HTML page, complete in itself: a browser opens it, no network is needed.");
     if (answer.written.size() > 1)

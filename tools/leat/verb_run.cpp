@@ -1,5 +1,3 @@
-#include <sstream>
-
 #include "sim/input/read_flowsheet.hpp"
 #include "sim/results/hdf5_file.hpp"
 #include "sim/results/result_access.hpp"
@@ -15,16 +13,6 @@ std::string kind_of(const std::string& text, const std::string& file) {
   return file_kind(text, file, unused);
 }
 
-// Lines of a results file's short cautions.
-std::vector<std::string> cautions_of(const ResultSet& results) {
-  std::vector<std::string> lines;
-  const TextTable* texts = find_texts(results, "cautions_in_short");
-  std::istringstream all(texts && !texts->values.empty() ? texts->values.front() : "");
-  for (std::string line; std::getline(all, line);)
-    if (!line.empty()) lines.push_back(line);
-  return lines;
-}
-
 SolvedCase solve(const CaseSolver& solver, const std::string& text, const std::string& file) {
   Progress progress("through time");
   SolveSettings settings;
@@ -34,9 +22,11 @@ SolvedCase solve(const CaseSolver& solver, const std::string& text, const std::s
   return solver.solve(text, file, settings);
 }
 
+std::string output_of(const RunArguments& arguments) { return arguments.out.empty() ? default_output(arguments.file, ".h5") : arguments.out; }
+
 // Writes the results, then lays them out: what is not written is not shown.
 void take_results(const ResultSet& results, const RunArguments& arguments, Answer& answer) {
-  const std::string out = arguments.out.empty() ? default_output(arguments.file, ".h5") : arguments.out;
+  const std::string out = output_of(arguments);
   const FileOutcome outcome = write_result_file(results, out);
   if (!outcome.ok) {
     answer.exit_code = Exit::machine_trouble;
@@ -46,7 +36,7 @@ void take_results(const ResultSet& results, const RunArguments& arguments, Answe
   answer.title = attribute(results, "title");
   if (!answer.failure.empty()) answer.lines.push_back(answer.failure);
   answer.tables = tables_of(results);
-  answer.cautions = cautions_of(results);
+  answer.cautions = lines_of(results, "cautions_in_short");
   answer.written.emplace_back("results", out);
 }
 
@@ -64,6 +54,7 @@ int solve_and_say(const char* verb, const RunArguments& arguments, bool beakers_
     return say(answer, arguments.manner);
   }
   if (!kind.empty() && !knows_csv(arguments.manner, table_names(kind == "beaker" ? "beaker" : "run"), answer)) return say(answer, arguments.manner);
+  if (!may_replace(output_of(arguments), arguments.file, answer)) return say(answer, arguments.manner);
   const CaseSolver solver;
   const SolvedCase solved = solve(solver, text, arguments.file);
   take_findings(solved.diagnostics, answer);

@@ -5,6 +5,7 @@
 
 #include "models/chemistry/species_library.hpp"
 #include "models/core/diagnostics.hpp"
+#include "sim/results/result_set.hpp"
 #include "tools/leat/say.hpp"
 
 namespace leat {
@@ -43,6 +44,12 @@ SpeciesLibrary load_library();                                   // throws std::
 std::string read_text(const std::string& file, Diagnostics& diagnostics);  // a fault if it cannot be read
 std::string default_output(const std::string& file, const std::string& ending);  // outputs/NAME + ending
 std::string base_name(const std::string& file);
+std::string page_beside(const std::string& results);             // outputs/NAME.html of outputs/NAME.h5
+std::string reason_of(const Diagnostics& diagnostics);           // the first fault, and how many more there are
+std::vector<std::string> lines_of(const ResultSet& results, const char* texts);  // of a single text, without empty ones
+// False, with the reason in the answer, where --out names the input or a file that is no results file: nobody means to lose those.
+bool may_replace(const std::string& out, const std::string& input, Answer& answer);
+std::string program_identity();                                  // name, version and library: what results depend on besides the input
 std::string program_name();                                      // leat 0.1.0
 
 // Ctrl-C: from here on a first SIGINT or SIGTERM asks to stop (stop_asked), a second one ends the program as usual.

@@ -19,7 +19,7 @@ function valueAxis(axis, grid = true) {
     max: axis.max ?? undefined,
     interval: axis.step ?? undefined,
     scale: scaled,
-    axisLabel: {...text(), formatter: tick, hideOverlap: true},
+    axisLabel: {...text(), formatter: (value) => tick(value), hideOverlap: true},
     splitLine: {show: grid, lineStyle: {color: colour("grid")}},
     axisLine: {show: true, onZero: false, lineStyle: {color: colour("rule")}},
     axisTick: {show: false},
@@ -40,9 +40,9 @@ function labelAxis(labels, across, width) {
     axisLabel: {
       ...text(),
       interval: labels.length > 40 ? "auto" : 0,
-      rotate: !across && longest > room ? 40 : 0,
-      width: across ? room : 130,
-      overflow: "truncate"
+      rotate: !across && longest > room && room < 70 ? 40 : 0,
+      width: across || room >= 70 ? room - 6 : 130,
+      overflow: across || room < 70 ? "truncate" : "break"
     },
   };
 }
@@ -68,10 +68,10 @@ function seriesOption(chart, one, index, count) {
       ...shared,
       type: "line",
       symbol: form.marker,
-      symbolSize: sparse(points.length, index),
+      symbolSize: one.loose ? 10 : sparse(points.length, index),
       showSymbol: true,
       connectNulls: false,
-      lineStyle: {color: form.colour, width: 2, type: form.dash.length ? form.dash : "solid"},
+      lineStyle: {color: form.colour, width: one.loose ? 0 : 2, type: form.dash.length ? form.dash : "solid"},
       itemStyle: {color: form.colour, borderWidth: 1.5},
       z: one.right ? 5 : 3,
     };
@@ -139,11 +139,18 @@ function stackedUp(chart, shown) {
   });
 }
 
+// Half of the last label along numbers stands beyond the end of its axis.
+function endRoom(chart, shown) {
+  const last = chart.x.max ?? Math.max(...shown.flatMap(({one}) => one.x ?? chart.x.numbers ?? []));
+  return Number.isFinite(last) ? tick(last).length * 3.4 + 6 : 0;
+}
+
 function option(chart, view, hidden, width) {
   let shown = view.series.map((one, index) => ({one, index})).filter(({one}) => !hidden.has(one.name));
   if (chart.kind === "areas") shown = stackedUp(chart, shown);
   const labelled = chart.x.labels ? labelAxis(chart.x.labels, chart.across, width) :
                                     {...valueAxis({...chart.x, fit: true}, false), min: chart.x.min ?? "dataMin", max: chart.x.max ?? "dataMax"};
+  const ends = chart.x.labels ? 0 : endRoom(chart, shown);
   const vertical = [valueAxis(view.y)];
   if (view.right) vertical.push({...valueAxis(view.right, false), position: "right"});
   const across = chart.across === true;
@@ -157,7 +164,7 @@ function option(chart, view, hidden, width) {
         {left: 6,
          right: across  ? 24 :
              view.right ? 8 :
-                          20,
+                          Math.max(20, ends),
          top: 12,
          bottom: labelled.name ? 30 : 6,
          containLabel: true},
@@ -167,20 +174,52 @@ function option(chart, view, hidden, width) {
   };
 }
 
+// An axis of numbers whose labels stand at the values there are; of those that would touch, only some.
+function placesAxis(axis, width) {
+  const values = axis.numbers;
+  const log = axis.log === true;
+  const scale = (value) => (log ? Math.log(value) : value);
+  const [low, high] = [scale(values[0]), scale(values[values.length - 1])];
+  const pad = 0.04 * (high - low);
+  const back = (value) => (log ? Math.exp(value) : value);
+  let digits = 4;
+  while (digits < 9 && new Set(values.map((value) => tick(value, digits))).size < values.length) ++digits;
+  const half = (value) => tick(value, digits).length * 3.3 + 4;
+  const place = (value) => ((scale(value) - low) / (high - low)) * (width - 90);
+  const free = (a, b) => Math.abs(place(a) - place(b)) >= half(a) + half(b);
+  const last = values[values.length - 1];
+  const labelled = [];
+  for (const value of values.slice(0, -1))
+    if (free(value, last) && (!labelled.length || free(value, labelled[labelled.length - 1]))) labelled.push(value);
+  labelled.push(last);
+  const made = valueAxis({...axis, fit: true}, false);
+  return {
+    ...made,
+    min: back(low - pad),
+    max: back(high + pad),
+    axisTick: {show: true, customValues: values, lineStyle: {color: colour("rule")}},
+    axisLabel: {...text(), customValues: labelled, formatter: (value) => tick(value, digits)},
+  };
+}
+
 // A mean with the span from smallest to largest.
 function spanOption(chart, view, width) {
   const {low, mean, high} = view;
   const ink = colour("series-1");
+  const at = chart.x.numbers ?? chart.x.labels.map((_, i) => i);
+  const along = chart.x.numbers ? placesAxis(chart.x, width) : labelAxis(chart.x.labels, false, width);
+  if (chart.x.numbers || !along.axisLabel.rotate) Object.assign(along, {name: chart.x.title, nameLocation: "middle", nameGap: 30, nameTextStyle: text()});
   return {
     textStyle: text(),
-    grid: {left: 6, right: 16, top: 12, bottom: 6, containLabel: true},
-    xAxis: labelAxis(chart.x.labels, false, width),
+    grid: {left: 6, right: 20, top: 12, bottom: along.name ? 30 : 6, containLabel: true},
+    xAxis: along,
     yAxis: valueAxis({...view.y, fit: true}),
     tooltip: {
       ...tooltip(chart, view),
       formatter: (points) => {
         const i = (Array.isArray(points) ? points[0] : points).dataIndex;
-        return `<strong>${escaped(chart.x.labels[i])}</strong><br>mean ${escaped(figures(mean[i]))} ${escaped(view.y.unit)}<br>from ${
+        const where = chart.x.numbers ? `${figures(at[i])} ${chart.x.unit}` : chart.x.labels[i];
+        return `<strong>${escaped(where)}</strong><br>mean ${escaped(figures(mean[i]))} ${escaped(view.y.unit)}<br>from ${
             escaped(figures(low[i]))} to ${escaped(figures(high[i]))}`;
       },
     },
@@ -188,7 +227,7 @@ function spanOption(chart, view, width) {
       {
         type: "custom",
         animation: false,
-        data: chart.x.labels.map((_, i) => [i, low[i], high[i]]),
+        data: at.map((place, i) => [place, low[i], high[i]]),
         encode: {x: 0, y: [1, 2]},
         renderItem: (_, api) => {
           const [x, bottom] = api.coord([api.value(0), api.value(1)]);
@@ -198,7 +237,16 @@ function spanOption(chart, view, width) {
           return {type: "group", children: [line(x, bottom, x, top), line(x - 5, top, x + 5, top), line(x - 5, bottom, x + 5, bottom)]};
         },
       },
-      {type: "line", animation: false, data: mean, symbol: "circle", symbolSize: 8, lineStyle: {color: ink, width: 1.5}, itemStyle: {color: ink}},
+      {
+        type: "line",
+        animation: false,
+        data: at.map((place, i) => [place, mean[i]]),
+        symbol: "circle",
+        symbolSize: 8,
+        showAllSymbol: true,
+        lineStyle: {color: ink, width: chart.x.numbers ? 1.5 : 0},
+        itemStyle: {color: ink}
+      },
     ],
   };
 }

@@ -51,7 +51,7 @@ export function placeCloud(holder, cloud) {
     return {
       type: "value",
       scale: true,
-      axisLabel: {...text(), formatter: tick, hideOverlap: true},
+      axisLabel: {...text(), formatter: (value) => tick(value), hideOverlap: true},
       axisTick: {show: false},
       splitLine: {show: grid, lineStyle: {color: colour("grid")}},
       axisLine: {show: true, onZero: false, lineStyle: {color: colour("rule")}},

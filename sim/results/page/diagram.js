@@ -54,13 +54,14 @@ function linesOf(stream, flow, chosen) {
 function nodeOf(operation, flow) {
   const symbol = symbolOf(operation.kind);
   const label = {text: operation.name, width: Math.max(textWidth(operation.name, true), 10), height: 16 + symbol.top};
+  const below = {text: "air", width: 34, height: symbol.bottom + 26, layoutOptions: {"elk.nodeLabels.placement": "OUTSIDE V_BOTTOM H_CENTER"}};
   const taken = flow.streams.filter((stream) => stream.to === operation.name);
   const given = flow.streams.filter((stream) => stream.from === operation.name);
   const node = {
     id: `op:${operation.name}`,
     width: symbol.width,
     height: heightOf(symbol, Math.max(taken.length, given.length)),
-    labels: [label],
+    labels: operation.air ? [label, below] : [label],
     ports: [],
     layoutOptions: {
       "elk.nodeLabels.placement": "OUTSIDE V_TOP H_CENTER",
@@ -167,6 +168,16 @@ function drawEdge(edge, flow, order, show) {
   return group;
 }
 
+// Air, from below into the vessel.
+function airArrow(node, symbol) {
+  const x = node.width / 2;
+  const end = node.height + symbol.bottom;
+  return [
+    drawn("path", {d: `M${x} ${end + 22}V${end}`, class: "air", "marker-end": "url(#tip-air)"}),
+    drawn("text", {x: x + 6, y: end + 19, class: "numbers"}, "air"),
+  ];
+}
+
 function drawNode(node, flow, show) {
   const group = drawn("g", {transform: `translate(${node.x} ${node.y})`});
   if (node.text !== undefined) {
@@ -185,10 +196,11 @@ function drawNode(node, flow, show) {
          tabindex: 0,
          role: "img",
          "data-operation": operation.name,
-         "aria-label": `${operation.kind} ${operation.name}${said ? `: ${said}` : ""}`
+         "aria-label": `${operation.kind} ${operation.name}${operation.air ? ", air sparged" : ""}${said ? `: ${said}` : ""}`
        }))
     group.setAttribute(key, value);
   group.append(...symbol.draw(node.height));
+  if (operation.air) group.append(...airArrow(node, symbol));
   for (const port of node.ports ?? []) {
     const made = stub(symbol, node.height, port.id.startsWith("in:") ? "left" : "right", port.y);
     if (made) group.append(made);
@@ -203,7 +215,7 @@ function tips() {
   const tip = (id, kind) => drawn(
       "marker", {id, viewBox: "0 0 10 10", refX: 9, refY: 5, markerWidth: 10, markerHeight: 10, orient: "auto", markerUnits: "userSpaceOnUse"},
       drawn("path", {d: "M0 1L10 5L0 9Z", class: kind}));
-  return drawn("defs", {}, tip("tip", "tip"), tip("tip-back", "tip back"));
+  return drawn("defs", {}, tip("tip", "tip"), tip("tip-back", "tip back"), tip("tip-air", "tip air"));
 }
 
 // Figures go where they cover least; a node's block holds its name too.
@@ -211,7 +223,7 @@ function label(placed) {
   const blocks = placed.children.map((node) => {
     const above = node.labels?.[0]?.height ?? 0;
     const wide = Math.max(node.width, node.labels?.[0]?.width ?? 0);
-    return {x: node.x + node.width / 2 - wide / 2 - 3, y: node.y - above, width: wide + 6, height: node.height + above + 10};
+    return {x: node.x + node.width / 2 - wide / 2 - 3, y: node.y - above, width: wide + 6, height: node.height + above + (node.labels?.[1]?.height ?? 10)};
   });
   for (const edge of placed.edges) {
     edge.points = edge.sections.flatMap((section) => [section.startPoint, ...(section.bendPoints ?? []), section.endPoint]);
@@ -297,7 +309,8 @@ window.leatDiagram = async (holder, flow) => {
   const figuresKey = element("em", {});
   const key = element(
       "p", {class: "key"}, element("span", {class: "pulp"}, "with solids"), element("span", {class: "liquor"}, "liquor alone"),
-      element("span", {class: "back"}, "back to an earlier unit"), figuresKey);
+      element("span", {class: "back"}, "back to an earlier unit"),
+      flow.operations.some((operation) => operation.air) ? element("span", {class: "air"}, "air sparged") : "", figuresKey);
   holder.append(controls, key, frame, panel);
   async function redraw(first) {
     const chosen = choice.value === "" ? null : Number(choice.value);

@@ -18,7 +18,7 @@ export function raised(number) {
 }
 
 // For an axis: short, no trailing zeros.
-export function tick(value) {
+export function tick(value, digits = 6) {
   if (value === 0) return "0";
   const size = Math.abs(value);
   if (size < 1e-3 || size >= 1e6) {
@@ -26,7 +26,7 @@ export function tick(value) {
     const front = Number(mantissa);
     return (front === 1 ? "" : `${front} × `) + `10${raised(Number(exponent))}`;
   }
-  return String(Number(value.toPrecision(6)));
+  return String(Number(value.toPrecision(digits)));
 }
 
 export function escaped(text) { return String(text).replace(/[&<>"']/g, (sign) => `&#${sign.charCodeAt(0)};`); }

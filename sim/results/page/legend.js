@@ -10,6 +10,7 @@ export function look(series, index) {
   const n = series.look ?? index;
   return {
     colour: colour(`series-${(n % 8) + 1}`),
+    loose: series.loose === true,
     dash: series.dash ?? dashes[(n + Math.floor(n / 8)) % 8],
     marker: markers[n % 8],
     pattern: (n % 8) + 1
@@ -37,8 +38,8 @@ function swatch(form, kind) {
   const lines = kind === "lines";
   const picture = drawn("svg", {width: lines ? 30 : 16, height: 12, viewBox: lines ? "0 0 30 12" : "0 0 16 12", "aria-hidden": "true"});
   if (lines) {
-    picture.append(
-        drawn("line", {x1: 0, y1: 6, x2: 30, y2: 6, stroke: form.colour, "stroke-width": 2, "stroke-dasharray": form.dash.join(" ") || undefined}));
+    const line = {x1: 0, y1: 6, x2: 30, y2: 6, stroke: form.colour, "stroke-width": 2, "stroke-dasharray": form.dash.join(" ") || undefined};
+    if (!form.loose) picture.append(drawn("line", line));
     picture.append(marker(form));
   } else {
     picture.append(drawn("rect", {x: 0.5, y: 0.5, width: 15, height: 11, fill: form.colour, stroke: colour("rule")}));
