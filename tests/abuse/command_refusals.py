@@ -150,7 +150,7 @@ class FilesThatAreNone(InEmptyFolder):
         self.refused(self.written("image.yaml", b"\x89PNG\r\n\x1a\n" + bytes(range(256)) * 40), ":1:1")
 
     def test_results_file(self):
-        self.refused(self.written("results.yaml", b"\x89HDF\r\n\x1a\n" + bytes(2000)), ":1:1")
+        self.refused(self.written("results.yaml", b"\x89HDF\r\n\x1a\n" + bytes(2000)), "leat report")
 
     def test_utf16(self):
         self.refused(self.written("wide.yaml", "leat: 1\nkind: flowsheet\n".encode("utf-16")))

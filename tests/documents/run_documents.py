@@ -66,7 +66,7 @@ class Copy:
         for name in COPIED:
             source, target = os.path.join(support.TREE, name), os.path.join(self.folder, name)
             if os.path.isdir(source):
-                shutil.copytree(source, target, ignore=shutil.ignore_patterns("*.h5", "__pycache__"))
+                shutil.copytree(source, target, ignore=shutil.ignore_patterns("*.h5", "*.html", "*.ledger*", "*.cases", "__pycache__"))
             elif os.path.exists(source):
                 shutil.copy(source, target)
         self.tools = os.path.join(self.folder, "build", "release", "tools")

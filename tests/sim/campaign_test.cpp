@@ -120,13 +120,21 @@ TEST(Campaign, WhatACaseDoesStaysItsOwn) {
 
 TEST(Campaign, UnknownNamesAreFaultsBeforeAnythingIsWritten) {
   const ToyFolder folder;
-  CampaignSpec spec = toy_spec(numbers(3), numbers(2));
+  CampaignSpec spec = toy_spec({"bare"}, numbers(2));
   spec.base.text = "1 bare ";
   const CampaignOutcome outcome = run(spec, toy_settings(folder.path("deep/toy.ledger")));
   EXPECT_EQ(outcome.ending, CampaignOutcome::refused);
   ASSERT_EQ(outcome.faults.faults().size(), 1u);
   EXPECT_EQ(to_string(outcome.faults.faults()[0]), "toy.yaml:5:14 watch[1]: has no product; did you mean 'sum'?");
   EXPECT_TRUE(files::is_empty(folder.path("")));
+}
+
+// A name that the base case has not and a case has is a name.
+TEST(Campaign, NamesOfSomeCasesAreNoFaults) {
+  const ToyFolder folder;
+  CampaignSpec spec = toy_spec(numbers(3), numbers(2));
+  spec.base.text = "1 bare ";
+  EXPECT_EQ(run(spec, toy_settings(folder.path("toy.ledger"))).ending, CampaignOutcome::finished);
 }
 
 // The base case crashes: names are taken from the first case that is solved.
