@@ -125,11 +125,7 @@ void add_beaker(PageBuilder& page, const ResultView& view) {
     add_saturation(page, view);
     shelf.take(page, "saturation");
   }
-  shelf.drop("constants");
-  add_constants(page, view);
-  add_facts(page, view, shelf);
-  shelf.take_rest(page);
-  add_input(page, view);
+  add_ending(page, view, shelf);
 }
 
 }  // namespace leat

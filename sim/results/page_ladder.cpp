@@ -302,11 +302,7 @@ void add_ladder(PageBuilder& page, const ResultView& view) {
   draw(&LadderCharts::reagents);
   page.section("rungs", "Rung by rung");
   shelf.take(page, "ladder", rungs > 30);
-  shelf.drop("constants");
-  add_constants(page, view);
-  add_facts(page, view, shelf);
-  shelf.take_rest(page);
-  add_input(page, view);
+  add_ending(page, view, shelf);
 }
 
 }  // namespace leat

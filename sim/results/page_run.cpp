@@ -122,11 +122,7 @@ void add_run(PageBuilder& page, const ResultView& view) {
     page.section("reagents", "Reagents");
     shelf.take(page, "reagents");
   }
-  shelf.drop("constants");
-  add_constants(page, view);
-  add_facts(page, view, shelf);
-  shelf.take_rest(page);
-  add_input(page, view);
+  add_ending(page, view, shelf);
 }
 
 }  // namespace leat

@@ -33,6 +33,8 @@ std::string closure_words(const ResultView& view);
 void add_constants(PageBuilder& page, const ResultView& view);
 void add_facts(PageBuilder& page, const ResultView& view, TableShelf& shelf);
 void add_input(PageBuilder& page, const ResultView& view);
+// What every page of a results file ends with: constants, facts, tables not shown yet, input.
+void add_ending(PageBuilder& page, const ResultView& view, TableShelf& shelf);
 PageBuilder::Head head_of(const ResultView& view, std::string kind, const std::string& about);
 
 // Whether a component's forms are worth showing: neither water nor the proton.

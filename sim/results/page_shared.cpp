@@ -175,6 +175,14 @@ void add_input(PageBuilder& page, const ResultView& view) {
   page.html("<pre class=\"copy\" tabindex=\"0\">" + escaped(text) + "</pre>\n");
 }
 
+void add_ending(PageBuilder& page, const ResultView& view, TableShelf& shelf) {
+  shelf.drop("constants");
+  add_constants(page, view);
+  add_facts(page, view, shelf);
+  shelf.take_rest(page);
+  add_input(page, view);
+}
+
 PageBuilder::Head head_of(const ResultView& view, std::string kind, const std::string& about) {
   return {view.attribute("title"), std::move(kind), view.attribute("source"), about};
 }

@@ -109,6 +109,16 @@ std::vector<std::string> lines_of(const ResultSet& results, const char* texts) {
   return lines;
 }
 
+bool written(const FileOutcome& outcome, const std::string& what, const std::string& path, Answer& answer) {
+  if (outcome.ok) {
+    answer.written.emplace_back(what, path);
+    return true;
+  }
+  answer.exit_code = Exit::machine_trouble;
+  answer.failure = outcome.message;
+  return false;
+}
+
 bool may_replace(const std::string& out, const std::string& input, Answer& answer) {
   std::error_code error;
   if (!std::filesystem::is_regular_file(out, error) || std::filesystem::file_size(out, error) == 0) return true;

@@ -86,17 +86,6 @@ class Climb {
   std::string first_reason_, read_step_;
 };
 
-// False, with the reason said, where a file cannot be written.
-bool written(const FileOutcome& outcome, const char* what, const std::string& path, Answer& answer) {
-  if (outcome.ok) {
-    answer.written.emplace_back(what, path);
-    return true;
-  }
-  answer.exit_code = Exit::machine_trouble;
-  answer.failure = outcome.message;
-  return false;
-}
-
 std::string output_of(const LadderArguments& arguments) {
   return arguments.out.empty() ? default_output(arguments.file, ".ladder.h5") : arguments.out;
 }

@@ -73,16 +73,8 @@ MadePage page_of_file(const std::string& path) {
   return made;
 }
 
-// False, with the reason said, where the page cannot be written.
 bool write_page(const std::string& html, const std::string& what, const std::string& path, Answer& answer) {
-  const FileOutcome outcome = write_whole_file(path, std::as_bytes(std::span(html)));
-  if (outcome.ok) {
-    answer.written.emplace_back(what, path);
-    return true;
-  }
-  answer.exit_code = Exit::machine_trouble;
-  answer.failure = outcome.message;
-  return false;
+  return written(write_whole_file(path, std::as_bytes(std::span(html))), what, path, answer);
 }
 
 int report_results(const ReportArguments& arguments, const std::string& out, Answer& answer) {

@@ -27,17 +27,11 @@ std::string output_of(const RunArguments& arguments) { return arguments.out.empt
 // Writes the results, then lays them out: what is not written is not shown.
 void take_results(const ResultSet& results, const RunArguments& arguments, Answer& answer) {
   const std::string out = output_of(arguments);
-  const FileOutcome outcome = write_result_file(results, out);
-  if (!outcome.ok) {
-    answer.exit_code = Exit::machine_trouble;
-    answer.failure = outcome.message;
-    return;
-  }
+  if (!written(write_result_file(results, out), "results", out, answer)) return;
   answer.title = attribute(results, "title");
   if (!answer.failure.empty()) answer.lines.push_back(answer.failure);
   answer.tables = tables_of(results);
   answer.cautions = lines_of(results, "cautions_in_short");
-  answer.written.emplace_back("results", out);
 }
 
 int solve_and_say(const char* verb, const RunArguments& arguments, bool beakers_only) {

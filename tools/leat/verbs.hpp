@@ -6,6 +6,7 @@
 #include "models/chemistry/species_library.hpp"
 #include "models/core/diagnostics.hpp"
 #include "sim/results/result_set.hpp"
+#include "sim/results/whole_file.hpp"
 #include "tools/leat/say.hpp"
 
 namespace leat {
@@ -47,6 +48,8 @@ std::string base_name(const std::string& file);
 std::string page_beside(const std::string& results);             // outputs/NAME.html of outputs/NAME.h5
 std::string reason_of(const Diagnostics& diagnostics);           // the first fault, and how many more there are
 std::vector<std::string> lines_of(const ResultSet& results, const char* texts);  // of a single text, without empty ones
+// False, with the reason in the answer, where a file cannot be written; else it is among those written.
+bool written(const FileOutcome& outcome, const std::string& what, const std::string& path, Answer& answer);
 // False, with the reason in the answer, where --out names the input or a file that is no results file: nobody means to lose those.
 bool may_replace(const std::string& out, const std::string& input, Answer& answer);
 std::string program_identity();                                  // name, version and library: what results depend on besides the input

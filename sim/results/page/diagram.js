@@ -2,7 +2,7 @@
 import ELK from "elkjs/lib/elk.bundled.js";
 import {drawn, element, figures} from "./figures.js";
 import {placeLabels} from "./labels.js";
-import {flag, heightOf, stub, symbolOf} from "./symbols.js";
+import {flag, heightOf, nozzle, symbolOf} from "./symbols.js";
 
 const rules = {
   "elk.algorithm": "layered",
@@ -202,7 +202,7 @@ function drawNode(node, flow, show) {
   group.append(...symbol.draw(node.height));
   if (operation.air) group.append(...airArrow(node, symbol));
   for (const port of node.ports ?? []) {
-    const made = stub(symbol, node.height, port.id.startsWith("in:") ? "left" : "right", port.y);
+    const made = nozzle(symbol, node.height, port.id.startsWith("in:") ? "left" : "right", port.y);
     if (made) group.append(made);
   }
   group.append(drawn("text", {x: node.width / 2, y: -symbol.top - 4, "text-anchor": "middle", class: "name"}, operation.name));

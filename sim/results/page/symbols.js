@@ -1,6 +1,6 @@
 // Symbols of the flow diagram, drawn for this page in the spirit of process drawings: outline, what turns or settles, level.
 // A symbol has a size, sides its streams may use, and a drawing in its own coordinates. Sides left and right are straight walls or
-// are met by a short stub, so that a stream always ends at the outline.
+// are met by a short nozzle, so that a stream always ends at the outline.
 import {drawn} from "./figures.js";
 
 const path = (d, kind = "outline") => drawn("path", {d, class: kind});
@@ -57,9 +57,9 @@ export function heightOf(symbol, streams) { return symbol.outlets ? symbol.heigh
 export function flag(width, height) { return path(`M0 0H${width - 11}L${width} ${height / 2}L${width - 11} ${height}H0Z`, "flag"); }
 
 // From the port on a symbol's box to its slanted side.
-export function stub(symbol, height, side, y) {
+export function nozzle(symbol, height, side, y) {
   if (symbol.slanted !== side) return null;
   const reach = (Math.abs(y - height / 2) / (height / 2)) * symbol.width;
   if (reach < 0.5) return null;
-  return side === "left" ? path(`M0 ${y}H${reach}`, "stub") : path(`M${symbol.width} ${y}H${symbol.width - reach}`, "stub");
+  return side === "left" ? path(`M0 ${y}H${reach}`, "nozzle") : path(`M${symbol.width} ${y}H${symbol.width - reach}`, "nozzle");
 }
