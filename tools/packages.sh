@@ -10,7 +10,7 @@ need() {
     command -v sudo >/dev/null || { echo "run this as root, or install sudo: packages are missing:$missing" >&2; exit 1; }
     as_root="sudo"
   fi
-  echo "installing (on a bare system about 250 MB to download, 2 GB on disk with the build, some minutes):$missing"
+  echo "installing (on a bare system about 300 to 500 MB to download, 3 GB on disk with the build, some minutes):$missing"
   $as_root apt-get update -q
   $as_root env DEBIAN_FRONTEND=noninteractive apt-get install -y -q --no-install-recommends $missing
 }
